@@ -1,0 +1,56 @@
+"""Means over the probability simplex: exact moments, cubature rules, proofs and tables.
+
+Conventions, which hold everywhere in the package
+-------------------------------------------------
+==============  ==============================================================================================
+quantity        convention
+==============  ==============================================================================================
+index           components, nodes and weights count from 0 in Python, from 1 in printed formulas (λ_1 … λ_N)
+node            barycentric coordinates λ_i ≥ 0 with Σ λ_i = 1; arrays have shape ``(M, N)``
+weight          sums to 1 over the rule; arrays have shape ``(M,)``
+E[·]            always a mean: every measure has total mass 1
+degree          largest total degree of the polynomials that a rule averages exactly
+orbit           all different permutations of one node; its weight is shared equally among them
+logarithm       natural; entropies are in nats
+==============  ==============================================================================================
+"""
+
+from __future__ import annotations
+
+from importlib import import_module
+from typing import Any
+
+__version__ = "0.1.0"
+
+# Loaded when first asked for, so that `import simplexcub` costs nothing and each use pays only for its own floor.
+_HOME = {
+    "Measure": "measures",
+    "dirichlet": "measures",
+    "flat": "measures",
+    "hilbert_schmidt": "measures",
+    "induced": "measures",
+    "Rule": "rule",
+    "solve": "search",
+    "verify": "verify",
+    "load": "table",
+    "read": "table",
+    "save": "table",
+    "InputError": "errors",
+    "NothingFound": "errors",
+    "SimplexcubError": "errors",
+    "TableError": "errors",
+}
+
+__all__ = [*_HOME, "__version__"]  # noqa: PLE0604 -- the names come from the table above
+
+
+def __getattr__(name: str) -> Any:
+    if name not in _HOME:
+        raise AttributeError(f"module 'simplexcub' has no attribute {name!r}")
+    value = getattr(import_module(f"simplexcub.{_HOME[name]}"), name)
+    globals()[name] = value
+    return value
+
+
+def __dir__() -> list[str]:
+    return sorted(__all__)
