@@ -78,7 +78,7 @@ class Measure(ABC):
         Examples
         --------
         >>> hilbert_schmidt(3).moment((2, 1, 0))
-        Fraction(1, 15)
+        Fraction(1, 33)
         """
         powers = tuple(exponents)
         if len(powers) != self.N:
