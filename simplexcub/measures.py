@@ -193,7 +193,8 @@ class Induced(Measure):
         ginibre = rng.standard_normal(shape) + 1j * rng.standard_normal(shape)
         values = np.linalg.eigvalsh(ginibre @ ginibre.conj().transpose(0, 2, 1))
         spectra: FloatArray = np.clip(values, 0.0, None)
-        return spectra / spectra.sum(axis=1, keepdims=True)
+        spectra /= spectra.sum(axis=1, keepdims=True)
+        return spectra
 
     def over_dirichlet(self) -> tuple[tuple[Fraction, ...], bool]:
         return (Fraction(self.K - self.N + 1),) * self.N, True
@@ -264,7 +265,8 @@ def induced(N: int, K: int) -> Induced:
         N < 2 or K < N. For K < N the spectrum has N − K zeros; its other part is ``induced(K, N)``.
     """
     n = _size("N", N, 2)
-    return Induced(n, _size("K", K, n, f"K is the environment's dimension; for K < N average over induced(N={K}, K={N})."))
+    remedy = f"K is the environment's dimension; for K < N the non-zero spectrum follows induced(N={K}, K={N})."
+    return Induced(n, _size("K", K, n, remedy))
 
 
 _BUILDERS: dict[str, tuple[tuple[str, ...], Any]] = {

@@ -187,7 +187,7 @@ def rule_from_orbits(
     digits: int,
     provenance: Provenance,
 ) -> Rule:
-    """A fully symmetric rule from (multiplicities, distinct values, weight of the whole orbit), each node written out."""
+    """A fully symmetric rule from (multiplicities, distinct values, weight of the orbit), each node written out."""
     printed, nodes, weights = [], [], []
     for multiplicities, values, weight in orbits:
         texts = tuple(to_decimal(v, digits) for v in values)

@@ -51,7 +51,7 @@ def _alternating_sum(exponents: tuple[int, ...], c: Fraction, kernel: PairKernel
 
 @lru_cache(maxsize=65536)
 def alternant_moment(exponents: tuple[int, ...], c: Fraction, kernel: PairKernel, homogeneity: Fraction) -> Fraction:
-    """E[λ^a] of the fixed-trace ensemble with the given pair kernel; `exponents` sorted, so that equal ones are cached."""
+    """E[λ^a] of the fixed-trace ensemble with the given pair kernel; pass `exponents` sorted, so the cache serves."""
     zero = (0,) * len(exponents)
     if exponents == zero:
         return Fraction(1)

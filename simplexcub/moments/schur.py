@@ -59,7 +59,7 @@ def _straighten(exponents: tuple[int, ...]) -> tuple[int, tuple[int, ...]]:
 
 
 def schur_moment(exponents: Sequence[int], k: int) -> Fraction:
-    """E[λ^a] over the induced measure with N = len(exponents), by expanding the symmetrised monomial in Schur functions."""
+    """E[λ^a] over the induced measure, N = len(exponents), by expanding the symmetrised monomial in Schur functions."""
     n = len(exponents)
     total = Fraction(0)
     count = 0
