@@ -19,6 +19,7 @@ from numpy.typing import NDArray
 from simplexcub.errors import InputError
 from simplexcub.moments.alternant import alternant_moment, difference
 from simplexcub.moments.dirichlet import rising_factorial_moment, stick_breaking_moment
+from simplexcub.moments.powersum import power_sum_moment
 from simplexcub.moments.schur import schur_moment
 
 FloatArray = NDArray[np.float64]
@@ -89,6 +90,18 @@ class Measure(ABC):
         if chosen not in self.routes:
             raise InputError(f"route must be one of {', '.join(self.routes)}", chosen)
         return self._moment(tuple(int(a) for a in powers), chosen)
+
+    def power_sum_moment(self, parts: Sequence[int]) -> Fraction:
+        """Exact mean E[Π p_k] over k in `parts`, p_k = Σ λ_i^k, for a symmetric measure.
+
+        Examples
+        --------
+        >>> hilbert_schmidt(3).power_sum_moment((2,))
+        Fraction(3, 5)
+        """
+        if not self.is_symmetric:
+            raise InputError("power sums need a symmetric measure", self)
+        return power_sum_moment(self.moment, self.N, parts)
 
     def __str__(self) -> str:
         inner = ", ".join(f"{k}={v}" for k, v in self.parameters().items() if k != "family")
