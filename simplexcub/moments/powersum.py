@@ -1,6 +1,6 @@
 """Exact means of products of power sums p_k = Σ λ_i^k, from the moments of sorted monomials.
 
-    E[p_μ] = Σ_a [λ^a] p_μ · #(orderings of a) · E[λ^a],   a over partitions of |μ| into at most N parts
+E[p_μ] = Σ_a [λ^a] p_μ · #(orderings of a) · E[λ^a],   a over partitions of |μ| into at most N parts
 """
 
 from __future__ import annotations
