@@ -5,6 +5,7 @@ from __future__ import annotations
 import argparse
 
 from simplexcub.cli.options import listed, whole
+from simplexcub.errors import InputError
 from simplexcub.measures import FAMILIES, Measure, from_parameters
 
 
@@ -23,3 +24,19 @@ def add_measure(parser: argparse.ArgumentParser, *, option: bool = False) -> Non
 def measure_of(args: argparse.Namespace) -> Measure:
     """The measure that the options of `add_measure` describe."""
     return from_parameters({"family": args.measure, "N": args.N, "K": args.K, "alpha": args.alpha})
+
+
+def stated_measure(args: argparse.Namespace) -> Measure | None:
+    """The measure given by ``--measure``, or None where the file is to name it.
+
+    Raises
+    ------
+    InputError
+        Parameters without ``--measure``.
+    """
+    if args.measure is None:
+        given = [name for name, value in (("-N", args.N), ("-K", args.K), ("--alpha", args.alpha)) if value is not None]
+        if given:
+            raise InputError("parameters must come with --measure", f"{given[0]} alone", "Or let the file name it all.")
+        return None
+    return measure_of(args)
