@@ -125,6 +125,9 @@ def verify(
             f"degree {rule.degree} claimed, but the mean of {_monomial(wrong.offender, rule.space == 'symmetric')} "
             f"is off by {wrong.offence} (degree {wrong.degree})"
         )
+    bound = lower_bound(against, judged.degree, rule.space)
+    if rule.degree and len(rule) < bound:
+        reasons.append(f"degree {rule.degree} claimed with {len(rule)} nodes, but no such rule has fewer than {bound}")
     verification = Verification(
         moments_checked=judged.moments_checked,
         max_residual=judged.max_residual,
@@ -132,7 +135,7 @@ def verify(
         fails_at_degree=fails_at,
         positive=is_positive(printed),
         inside=not off_simplex,
-        lower_bound=lower_bound(against, judged.degree, rule.space),
+        lower_bound=bound,
     )
     digits = _agreeing(printed.digits, judged.ratio)
     return Report(rule, against, not reasons, fails_at - 1, digits, verification, tuple(reasons))

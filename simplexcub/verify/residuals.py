@@ -36,6 +36,7 @@ from numpy.typing import NDArray
 from simplexcub.errors import InputError
 from simplexcub.measures import Measure
 from simplexcub.rule import Space
+from simplexcub.symmetry import distinct_permutations
 from simplexcub.verify.printed import Printed
 
 FloatArray = NDArray[np.float64]
@@ -123,7 +124,7 @@ def check_degree(printed: Printed, measure: Measure, degree: int, space: Space, 
     n, nodes = measure.N, len(printed.nodes)
     if space not in ("all", "symmetric"):
         raise InputError("space must be all or symmetric for a rule to be verified", space)
-    means = {a: mean(measure, a) for a in _exponents(measure, degree, space, invariant)}
+    means = _means(measure, degree, space, invariant)
     smallest = min(means.values())
     depth = len(str(smallest.denominator // smallest.numerator))
     orderings = {a: _orderings(a) for a in means}
@@ -173,10 +174,16 @@ def mean(measure: Measure, exponents: Exponents) -> Fraction:
     return _cached_mean(measure, exponents)
 
 
-def _exponents(measure: Measure, degree: int, space: Space, invariant: bool) -> Iterator[Exponents]:
-    if space == "symmetric" or invariant:
-        return partitions(degree, measure.N, degree)
-    return compositions(degree, measure.N)
+def _means(measure: Measure, degree: int, space: Space, invariant: bool) -> dict[Exponents, Fraction]:
+    if space == "all" and not invariant:
+        return {a: mean(measure, a) for a in compositions(degree, measure.N)}
+    sorted_exponents = partitions(degree, measure.N, degree)
+    if measure.is_symmetric:
+        return {a: mean(measure, a) for a in sorted_exponents}
+    return {
+        nu: sum((mean(measure, a) for a in distinct_permutations(nu)), Fraction(0)) / _orderings(nu)
+        for nu in sorted_exponents
+    }
 
 
 def compositions(total: int, length: int) -> Iterator[Exponents]:
@@ -215,10 +222,10 @@ def _quotient(residual: Fraction, tolerance: Fraction) -> float:
     return float(residual / tolerance)
 
 
-def _terms(values: list[int], units: FloatArray, places: int, q: int) -> _Terms:
+def _terms(values: list[int], units: FloatArray, places: int, q: int, largest: float = math.inf) -> _Terms:
     lift = 10 ** (q - places)
     size = np.array([abs(v) / 10**places for v in values])
-    return _Terms([v * lift for v in values], size, units)
+    return _Terms([v * lift for v in values], np.minimum(size, largest), units)
 
 
 def _powers(printed: Printed, degree: int, q: int) -> list[list[_Terms]]:
@@ -227,7 +234,8 @@ def _powers(printed: Printed, degree: int, q: int) -> list[list[_Terms]]:
     unity = _Terms([one] * nodes, np.ones(nodes), np.zeros(nodes))
     table = []
     for i in range(len(printed.nodes[0])):
-        x = _terms([node[i] for node in printed.nodes], printed.node_units[:, i], printed.places, q)
+        # A coordinate above 1 is refused elsewhere; its powers must not overflow here.
+        x = _terms([node[i] for node in printed.nodes], printed.node_units[:, i], printed.places, q, 1.0)
         column = [unity]
         for _ in range(degree):
             column.append(column[-1].times(x, one))
