@@ -113,23 +113,24 @@ class SymmetricBasis:
             Row 0 holds the functions; row 1 + j the derivative by values[:, j], j < k − 1, with the last
             coordinate following from the sum.
         """
-        k = len(multiplicities)
+        k, count = len(multiplicities), len(values)
         m = np.array(multiplicities, dtype=float)
-        g = _generators(values, m, self.n)
-        y = self.n * values - 1.0
-        dg = np.empty((len(values), k - 1, self.n - 1))
+        g = _generators(values, m, self.n).T
+        y = (self.n * values - 1.0).T
+        dg = np.empty((self.n - 1, k - 1, count))
         for e in range(2, self.n + 1):
-            dg[:, :, e - 2] = e * m[:-1] * (y[:, :-1] ** (e - 1) - y[:, -1:] ** (e - 1))
-        out = np.empty((len(values), k, len(self)))
-        out[:, :, 0] = 0.0
-        out[:, 0, 0] = 1.0
+            dg[e - 2] = e * m[:-1, None] * (y[:-1] ** (e - 1) - y[-1] ** (e - 1))
+        out = np.empty((len(self), k, count))  # functions first, so that every level is one matrix product
+        out[0] = 0.0
+        out[0, 0] = 1.0
         for level in self._levels:
-            generators, earlier = level.generators, out[:, :, level.sources]
-            new = g[:, None, generators] * earlier
-            new[:, 1:] += dg[:, :, generators] * earlier[:, :1]
-            new -= out[:, :, level.low : level.start] @ level.shift
-            out[:, :, level.start : level.stop] = new @ level.scale
-        return out
+            generators, earlier = level.generators, out[level.sources]
+            new = g[generators][:, None] * earlier
+            new[:, 1:] += dg[generators] * earlier[:, :1]
+            new = new.reshape(len(new), -1)
+            new -= level.shift.T @ out[level.low : level.start].reshape(level.start - level.low, -1)
+            out[level.start : level.stop] = (level.scale.T @ new).reshape(-1, k, count)
+        return out.transpose(2, 1, 0)
 
     def _run_fixed(self, out: IntArray, times: Callable[[IntArray, int], IntArray], bits: int) -> IntArray:
         """The recurrence in integers scaled by 2^bits; `times` multiplies one column by one generator."""
@@ -228,7 +229,11 @@ def _weight(exponents: tuple[int, ...]) -> int:
 def _generators(values: FloatArray, multiplicities: FloatArray, n: int) -> FloatArray:
     """g_2 … g_N at nodes given by distinct coordinates; shape (P, N − 1)."""
     y = n * values - 1.0
-    return np.stack([(y**k) @ multiplicities / n for k in range(2, n + 1)], axis=1)
+    power, found = y, []
+    for _ in range(2, n + 1):
+        power = power * y
+        found.append(power @ multiplicities / n)
+    return np.stack(found, axis=1)
 
 
 def _fixed(array: FloatArray, bits: int) -> Any:

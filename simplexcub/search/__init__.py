@@ -15,7 +15,7 @@ import simplexcub
 from simplexcub.errors import InputError
 from simplexcub.measures import Measure
 from simplexcub.rule import Provenance, Rule, rule_from_orbits
-from simplexcub.search.conical import MOST_NODES, conical_count, conical_rule
+from simplexcub.search.conical import MOST_NODES, conical_rule
 from simplexcub.search.gauss import gauss_rule
 from simplexcub.search.orbits import Budget, Progress, find_orbits
 
@@ -92,7 +92,6 @@ def solve(
     product = replace(provenance, method="conical product")
     if measure.is_symmetric and symmetry == "full":
         allowance = Budget(budget)
-        most = min(MOST_NODES, conical_count(measure, degree))
         with _workers(jobs) as executor:
             orbits = find_orbits(
                 measure,
@@ -100,7 +99,7 @@ def solve(
                 digits=digits,
                 seed=seed,
                 budget=allowance,
-                most_nodes=most,
+                most_nodes=MOST_NODES,
                 executor=executor,
                 progress=progress,
             )
