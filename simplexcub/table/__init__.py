@@ -1,6 +1,7 @@
 """A rule as text: one file per format, reading it back digit for digit, and the shipped tables."""
 
+from simplexcub.table.catalogue import Shipped, catalogue, load
 from simplexcub.table.formats import FORMATS, encode, format_of, render, save
 from simplexcub.table.reading import parse, read
 
-__all__ = ["FORMATS", "encode", "format_of", "parse", "read", "render", "save"]
+__all__ = ["FORMATS", "Shipped", "catalogue", "encode", "format_of", "load", "parse", "read", "render", "save"]

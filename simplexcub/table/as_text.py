@@ -12,7 +12,7 @@ from simplexcub.table.sheet import Sheet, groups, sheet
 MARK = "simplexcub rule"
 _WIDTH = 96
 _LABEL = 16
-_BLOCKS_IN_LINE = 5
+_BLOCKS_IN_LINE = 6
 _GAP = "   "
 NONE = "–"
 

@@ -81,7 +81,7 @@ def measure_line(measure: Measure) -> str:
 
 
 def status(rule: Rule) -> str:
-    """``verified``, or ``NOT VERIFIED: `` and the reason."""
+    """``verified``, or ``NOT VERIFIED: `` and the reason; a rule of degree 0 claims nothing, so it has neither."""
     found = rule.verification
     if found is None:
         return "NOT VERIFIED: it has not been checked"
@@ -90,6 +90,8 @@ def status(rule: Rule) -> str:
             f"NOT VERIFIED: degree {found.fails_at_degree} already fails; "
             f"the worst mean, that of {monomial(found.worst_exponents)}, is off by {found.max_residual}"
         )
+    if rule.degree == 0:
+        return f"no degree is claimed; as printed the rule is exact to degree {found.fails_at_degree - 1}"
     printed = read_printed(rule)
     weights = weight_faults(printed, equal=rule.equal_weights)
     faults = [*weights, *node_faults(printed), *claim_faults(rule, printed)]
@@ -106,11 +108,12 @@ def facts(rule: Rule) -> list[Fact]:
     if measure.N > 4:
         with_respect = f"dλ1 … dλ{measure.N - 1}"
         tex_differential = rf"d\lambda_1\cdots d\lambda_{{{measure.N - 1}}}"
+    state = status(rule)
     exact_for = EXACT_FOR[rule.space].format(rule.degree)
     source = rule.provenance
     made_by = f"{source.package}, seed {source.seed}, {source.date}"
     return [
-        Fact("status", status(rule), escape(status(rule))),
+        _fact("status", state),
         _fact("measure", measure_line(measure)),
         Fact("density", f"{plain}  with respect to {with_respect}", rf"${tex}$ with respect to ${tex_differential}$"),
         _fact("exact for", exact_for),

@@ -9,7 +9,7 @@ from types import MappingProxyType
 
 from simplexcub.errors import InputError
 from simplexcub.rule import Rule
-from simplexcub.table import as_csv, as_json, as_text
+from simplexcub.table import as_csv, as_json, as_latex, as_markdown, as_npz, as_python, as_text
 from simplexcub.table.files import write_atomically
 from simplexcub.verify import verify
 
@@ -37,6 +37,10 @@ FORMATS: Mapping[str, Format] = MappingProxyType(
         "json": Format((".json",), as_json.export),
         "csv": Format((".csv",), as_csv.export),
         "text": Format((".txt", ".text", ".dat"), as_text.export),
+        "markdown": Format((".md", ".markdown"), as_markdown.export),
+        "latex": Format((".tex",), as_latex.export),
+        "npz": Format((".npz",), as_npz.export, binary=True),
+        "python": Format((".py",), as_python.export),
     }
 )
 
