@@ -11,9 +11,10 @@ from simplexcub.errors import TableError
 from simplexcub.measures import Measure
 from simplexcub.rule import Provenance, Rule
 from simplexcub.table.record import assemble
-from simplexcub.table.sanity import LONGEST_NUMBER, check_number, is_number
+from simplexcub.table.sanity import LONGEST_NUMBER, check_number
 
 _COMMENT = ("#", "%", "!", "//")
+_DIGITS_FIRST = re.compile("[+-]?[.]?[0-9]")
 
 
 def parse(text: str, where: str, measure: Measure | None) -> Rule:
@@ -38,7 +39,7 @@ def parse(text: str, where: str, measure: Measure | None) -> Rule:
         if not line.strip() or line.lstrip().startswith(_COMMENT):
             continue
         cells = split_row(line)
-        if not rows and not heading_seen and not any(is_number(cell) for cell in cells):
+        if not rows and not heading_seen and not any(_DIGITS_FIRST.match(cell) for cell in cells):
             heading_seen = True
             continue
         rows.append(cells)

@@ -44,12 +44,12 @@ def parse(text: str, where: str) -> Rule:
         place = f"{where}, entry {lead[0]}"
         values = tuple(number for label, number in numbers.items() if label not in ("w", "W"))
         weight = numbers.get("w", numbers.get("W"))
-        if weight is None:
-            raise TableError(f"{place} must have a weight", "none", _AGAIN)
+        if weight is None or (len(lead) > 1 and "W" not in numbers):
+            raise TableError(f"{place} must have its weights", "an entry without", f"It may be cut short. {_AGAIN}")
         if len(lead) == 1:
             expanded = [values]
         else:
-            orbit = Orbit(_pattern(lead[2], place), values, numbers.get("W", weight))
+            orbit = Orbit(_pattern(lead[2], place), values, numbers["W"])
             size = count_nodes(orbit, head["space"])
             if len(orbit.multiplicities) != len(values) or sum(orbit.multiplicities) != measure.N or size > count:
                 raise TableError(f"{place} must fit its pattern and the measure", lead[2], _AGAIN)

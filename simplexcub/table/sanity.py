@@ -14,12 +14,8 @@ from simplexcub.errors import TableError
 # Python converts at most 4300 digits of text to an integer, so longer decimals could be read but never used.
 LONGEST_NUMBER = 4000
 LARGEST_EXPONENT = 4000
+_EXACT_PLACES = 3
 _NUMBER = re.compile(r"[+-]?(?:[0-9]+\.?[0-9]*|\.[0-9]+)(?:[eE]([+-]?[0-9]+))?")
-
-
-def is_number(text: str) -> bool:
-    """Whether `text` is a decimal number, with or without exponent."""
-    return _NUMBER.fullmatch(text) is not None
 
 
 def check_number(text: str, where: str) -> None:
@@ -67,7 +63,8 @@ def _sum(texts: Sequence[str], places: int, digits: int) -> tuple[Decimal, Decim
     """The sum of decimals and how far rounding of the printed digits can have moved it.
 
     A table printed to fixed places is off by half a unit of the last place, one printed to significant digits by its
-    share of the number itself; two digits are left for sums that were normalised in the same precision.
+    share of the number itself; two digits are left for sums that were normalised in the same precision. Up to three
+    places are taken to be exact, such as 0.5.
     """
     context = Context(prec=digits + 30, Emin=-99_999, Emax=99_999)
     total, size = Decimal(0), Decimal(0)
@@ -76,8 +73,9 @@ def _sum(texts: Sequence[str], places: int, digits: int) -> tuple[Decimal, Decim
         total = context.add(total, value)
         size = context.add(size, abs(value))
     relative = context.multiply(size, Decimal(1).scaleb(2 - max(digits, 6), context))
-    absolute = context.multiply(Decimal(len(texts)) / 2, Decimal(1).scaleb(-places, context))
-    return total, max(relative, absolute)
+    if places <= _EXACT_PLACES:
+        return total, relative
+    return total, max(relative, context.multiply(Decimal(len(texts)) / 2, Decimal(1).scaleb(-places, context)))
 
 
 def _places(texts: Iterable[str]) -> int:
