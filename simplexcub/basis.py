@@ -61,7 +61,7 @@ class SymmetricBasis:
         found = [e for e in product(*(range(degree // k + 1) for k in weights)) if _weight(e) <= degree]
         self.exponents: list[tuple[int, ...]] = sorted(found, key=lambda e: (_weight(e), e))
         self.degrees = [_weight(e) for e in self.exponents]
-        self._levels = self._orthogonalise(_flat_points(n, degree))
+        self._levels = self._orthogonalise(flat_points(n, degree))
 
     def __len__(self) -> int:
         return len(self.exponents)
@@ -139,8 +139,8 @@ class SymmetricBasis:
             columns = [times(out[:, s], j) for s, j in zip(level.sources, level.generators, strict=True)]
             new = np.stack(columns, axis=1)
             if earlier.size:
-                new = new - (earlier.dot(_fixed(level.shift, bits)) >> bits)
-            out[:, level.start : level.stop] = new.dot(_fixed(level.scale, bits)) >> bits
+                new = new - (earlier.dot(fixed_point(level.shift, bits)) >> bits)
+            out[:, level.start : level.stop] = new.dot(fixed_point(level.scale, bits)) >> bits
         return out
 
     def values_fixed(self, values: IntArray, multiplicities: tuple[int, ...], bits: int) -> IntArray:
@@ -236,7 +236,7 @@ def _generators(values: FloatArray, multiplicities: FloatArray, n: int) -> Float
     return np.stack(found, axis=1)
 
 
-def _fixed(array: FloatArray, bits: int) -> Any:
+def fixed_point(array: FloatArray, bits: int) -> Any:
     """Doubles as integers scaled by 2^bits, without rounding beyond that scale."""
     flat = [
         (int(m * 2.0**53) << bits) >> (53 - int(e)) if e <= 53 else int(m * 2.0**53) << (bits + int(e) - 53)
@@ -245,7 +245,7 @@ def _fixed(array: FloatArray, bits: int) -> Any:
     return np.array(flat, dtype=object).reshape(array.shape)
 
 
-def _flat_points(n: int, degree: int) -> tuple[FloatArray, FloatArray]:
+def flat_points(n: int, degree: int) -> tuple[FloatArray, FloatArray]:
     """Points and weights of a discrete flat measure, fine enough to tell all functions of the degree apart."""
     per_axis = min(degree + 1, int(_POINT_LIMIT ** (1 / (n - 1))))
     if per_axis > degree // 2 + 1:

@@ -7,81 +7,115 @@ SIAM J. Numer. Anal. 14 (1977) 391). Ranks are counted numerically at random poi
 
 from __future__ import annotations
 
-from collections.abc import Iterator, Sequence
+from collections.abc import Iterator
 from functools import lru_cache
-from itertools import combinations, pairwise
+from itertools import pairwise
 
 import numpy as np
 
-from simplexcub.basis import symmetric_basis
-from simplexcub.symmetry import orbit_size, orbit_types
+from simplexcub.invariants import invariant_basis
+from simplexcub.symmetry import Group, OrbitType
 
-Type = tuple[int, ...]
-Counts = tuple[tuple[Type, int], ...]  # (orbit type, how many orbits), types with none left out
+Counts = tuple[tuple[OrbitType, int], ...]  # (orbit type, how many orbits), types with none left out
+Condition = tuple[frozenset[OrbitType], int]
 
 _RANK_TOLERANCE = 1e-9
-
-
-def unknowns(type_: Type) -> int:
-    """Unknowns of one orbit: its weight and its free coordinates."""
-    return len(type_)
+_MOST_UNIONS = 5_000  # of strata; further ones would only repeat what these ask
 
 
 def node_count(counts: Counts) -> int:
     """Number of nodes of a rule with these orbits."""
-    return sum(c * orbit_size(t) for t, c in counts)
+    return sum(c * t.size for t, c in counts)
+
+
+def random_values(type_: OrbitType, points: np.ndarray) -> np.ndarray:
+    """Distinct coordinates of random orbits of a type: block means of points of the simplex; shape (…, k)."""
+    order = np.argsort(type_.pattern, kind="stable")
+    edges = np.cumsum((0, *type_.multiplicities))
+    return np.stack([points[..., order[a:b]].mean(axis=-1) for a, b in pairwise(edges)], axis=-1)
 
 
 @lru_cache(maxsize=256)
-def _conditions(n: int, degree: int) -> list[tuple[frozenset[Type], int]]:
+def conditions(group: Group, degree: int) -> list[Condition]:
     """(types, need): the orbits of these types together must have at least `need` unknowns."""
-    types = orbit_types(n)
-    basis = symmetric_basis(n, degree)
+    types = group.types
+    basis = invariant_basis(group, degree)
     rng = np.random.default_rng(0)
-    values = {}
+    spans = {}
     for t in types:
-        points = rng.dirichlet(np.ones(n), 4 * len(basis))
-        blocks = np.cumsum((0, *t))
-        means = np.stack([points[:, a:b].mean(axis=1) for a, b in pairwise(blocks)], axis=1)
-        values[t] = basis.jet(means, t)[:, 0]
-    needs: dict[frozenset[Type], int] = {}
-    for size in range(len(types)):
-        for chosen in combinations(types, size):
-            rank = 0
-            if chosen:
-                singular = np.linalg.svd(np.concatenate([values[t] for t in chosen]), compute_uv=False)
-                rank = int((singular > _RANK_TOLERANCE * singular[0]).sum())
-            others = frozenset(types) - frozenset(chosen)
-            needs[others] = max(needs.get(others, 0), len(basis) - rank)
-    # A condition follows from another when it asks no more of more types.
-    return [
-        (s, need)
-        for s, need in needs.items()
-        if need and not any(o < s and other >= need for o, other in needs.items())
+        values = basis.jet(random_values(t, rng.dirichlet(np.ones(group.n), 2 * len(basis) + 10)), t)[:, 0]
+        spans[t] = _row_space(values)
+    needs: dict[frozenset[OrbitType], int] = {}
+    for union in _closed_unions(group):
+        top = [t for t in union if not any(t is not o and _in_closure(group, t, o) for o in union)]
+        rank = len(_row_space(np.concatenate([spans[t] for t in top]))) if top else 0
+        others = frozenset(types) - union
+        needs[others] = max(needs.get(others, 0), len(basis) - rank)
+    # A condition follows from another that asks as much of fewer types.
+    return [(s, need) for s, need in needs.items() if need and not any(o < s and more >= need for o, more in needs.items())]
+
+
+def allowed(counts: Counts, wanted: list[Condition]) -> bool:
+    """Whether a count vector meets every condition."""
+    return all(sum(c * t.unknowns for t, c in counts if t in s) >= need for s, need in wanted)
+
+
+def possible_counts(group: Group, degree: int, *, most_nodes: int) -> Iterator[Counts]:
+    """Count vectors that pass every condition, by rising number of nodes, those with most unknowns first."""
+    wanted = conditions(group, degree)
+    types = list(reversed(group.types))
+    masks = [np.array([t in s for t in types]) for s, _ in wanted]
+    # Most unknowns that one node can bring to a condition, among the types from position i on.
+    rates = [
+        [max((t.unknowns / t.size for t, m in zip(types[i:], mask[i:], strict=True) if m), default=0.0) for i in range(len(types) + 1)]
+        for mask in masks
     ]
 
+    def extend(i: int, left: int, lacks: list[float]) -> Iterator[tuple[int, ...]]:
+        if any(lack > rates[j][i] * left + 1e-9 for j, lack in enumerate(lacks)):
+            return
+        if i == len(types):
+            if left == 0:
+                yield ()
+            return
+        t = types[i]
+        most = left // t.size
+        if t.unknowns == 1:
+            most = min(most, 1)  # a stratum of one point
+        for c in range(most, -1, -1):
+            rest = [lack - c * t.unknowns * mask[i] for lack, mask in zip(lacks, masks, strict=True)]
+            for tail in extend(i + 1, left - c * t.size, rest):
+                yield (c, *tail)
 
-def possible_counts(n: int, degree: int, *, most_nodes: int) -> Iterator[Counts]:
-    """Count vectors that pass every condition, by rising number of nodes, those with most unknowns first."""
-    types = orbit_types(n)
-    sizes = [orbit_size(t) for t in types]
-    conditions = _conditions(n, degree)
     for nodes in range(1, most_nodes + 1):
-        found = []
-        for counts in _compositions(sizes, nodes):
-            if counts[0] > 1:
-                continue  # there is one centre
-            of = dict(zip(types, counts, strict=True))
-            if all(sum(of[t] * unknowns(t) for t in s) >= need for s, need in conditions):
-                found.append(tuple((t, c) for t, c in of.items() if c))
-        yield from sorted(found, key=lambda cs: -sum(c * unknowns(t) for t, c in cs))
+        found = [
+            tuple((t, c) for t, c in zip(reversed(types), reversed(cs), strict=True) if c)
+            for cs in extend(0, nodes, [float(need) for _, need in wanted])
+        ]
+        yield from sorted(found, key=lambda cs: -sum(c * t.unknowns for t, c in cs))
 
 
-def _compositions(sizes: Sequence[int], total: int) -> Iterator[tuple[int, ...]]:
-    if len(sizes) == 1:
-        if total % sizes[0] == 0:
-            yield (total // sizes[0],)
-        return
-    for c in range(total // sizes[-1], -1, -1):
-        for rest in _compositions(sizes[:-1], total - c * sizes[-1]):
-            yield (*rest, c)
+def _row_space(values: np.ndarray) -> np.ndarray:
+    _, singular, rows = np.linalg.svd(values, full_matrices=False)
+    return rows[singular > _RANK_TOLERANCE * singular[0]]
+
+
+def _in_closure(group: Group, special: OrbitType, general: OrbitType) -> bool:
+    """Whether some node of a `special` orbit has all the equalities of `general`."""
+    labels = general.pattern
+    return any(
+        all(image[i] == image[labels.index(label)] for i, label in enumerate(labels))
+        for image in group.arrangements(special)
+    )
+
+
+def _closed_unions(group: Group) -> Iterator[frozenset[OrbitType]]:
+    """Unions of strata closed under taking limits, the small ones first, up to a fixed number."""
+    types = group.types
+    below = {t: frozenset(s for s in types if _in_closure(group, s, t)) for t in types}
+    seen: dict[frozenset[OrbitType], None] = {frozenset(): None}
+    for t in types:
+        for union in list(seen):
+            if len(seen) < _MOST_UNIONS:
+                seen.setdefault(union | below[t])
+    yield from seen

@@ -8,8 +8,6 @@ References: K. Levenberg, Q. Appl. Math. 2 (1944) 164; D. W. Marquardt, SIAM J. 
 
 from __future__ import annotations
 
-from dataclasses import dataclass
-
 import numpy as np
 from numpy.typing import NDArray
 
@@ -20,14 +18,6 @@ FloatArray = NDArray[np.float64]
 CONVERGED = 1e-13
 
 
-@dataclass(frozen=True)
-class Outcome:
-    """Candidates that solved the equations, and how many were started."""
-
-    solutions: FloatArray
-    started: int
-
-
 def solve_batch(system: System, u: FloatArray, *, iterations: int = 120, keep: float = 0.05) -> FloatArray:
     """Run the batch; return the candidates that solve the equations inside the simplex, shape (S, size)."""
     residual, jacobian = system.evaluate(u)
@@ -35,14 +25,9 @@ def solve_batch(system: System, u: FloatArray, *, iterations: int = 120, keep: f
     damping = 1e-2 * np.ones(len(u))
     best_before = cost.copy()
     solved: list[FloatArray] = []
-    eye = np.arange(system.size)
     for iteration in range(1, iterations + 1):
-        gradient = np.einsum("ben,be->bn", jacobian, residual)
-        normal = jacobian.transpose(0, 2, 1) @ jacobian
-        floor = 1e-14 * np.einsum("bnn->b", normal)  # keeps the system regular where a weight or orbit dies out
-        normal[:, eye, eye] += (damping * np.minimum(cost, 1.0) ** 0.5 + floor)[:, None]
-        step = -np.linalg.solve(normal, gradient[:, :, None])[:, :, 0]
-        slack = u @ system.slack_matrix.T + system.slack_offset
+        step = _damped_step(residual, jacobian, damping * np.minimum(cost, 1.0) ** 0.5)
+        slack = system.slack(u)
         change = step @ system.slack_matrix.T
         with np.errstate(divide="ignore", invalid="ignore"):
             ratio = np.where(change < 0, (1 - keep) * slack / -change, np.inf).min(axis=1)
@@ -71,3 +56,17 @@ def solve_batch(system: System, u: FloatArray, *, iterations: int = 120, keep: f
         if not len(u):
             break
     return np.concatenate(solved) if solved else np.empty((0, system.size))
+
+
+def _damped_step(residual: FloatArray, jacobian: FloatArray, damping: FloatArray) -> FloatArray:
+    """−(JᵀJ + d)⁻¹ Jᵀ F, through whichever of JᵀJ and J Jᵀ is smaller; of least norm where J has a kernel."""
+    wide = jacobian.shape[1] < jacobian.shape[2]
+    transposed = jacobian.transpose(0, 2, 1)
+    normal = jacobian @ transposed if wide else transposed @ jacobian
+    side = residual[:, :, None] if wide else transposed @ residual[:, :, None]
+    diagonal = np.arange(normal.shape[1])
+    floor = 1e-14 * np.einsum("bnn->b", normal)  # keeps the system regular where a weight or orbit dies out
+    normal[:, diagonal, diagonal] += (damping + floor)[:, None]
+    solved = -np.linalg.solve(normal, side)
+    step: FloatArray = (transposed @ solved if wide else solved)[:, :, 0]
+    return step

@@ -12,27 +12,26 @@ import numpy as np
 from mpmath import mp, mpf
 from numpy.typing import NDArray
 
-from simplexcub.measures import Measure
 from simplexcub.search.system import Block, System
+from simplexcub.symmetry import OrbitType
 
 IntArray = NDArray[np.object_]  # Python integers of any length
-Orbits = list[tuple[tuple[int, ...], list[mpf], mpf]]
+Orbits = list[tuple[OrbitType, list[mpf], mpf]]
 
 _MOST_PASSES = 60
 _SINGULAR = 1e-11  # singular values below this share of the largest carry no correction
 
 
-def refine(system: System, measure: Measure, u: NDArray[np.float64], digits: int) -> Orbits | None:
+def refine(system: System, u: NDArray[np.float64], digits: int) -> Orbits | None:
     """Polish one candidate to `digits` digits; None if it does not converge or ends outside the simplex.
 
     Returns
     -------
-    list of (multiplicities, distinct coordinates, orbit weight), mpmath numbers of a few digits more than asked.
+    list of (orbit type, distinct coordinates, orbit weight), mpmath numbers of a few digits more than asked.
     """
     bits = math.ceil((digits + 15) * math.log2(10))
-    jacobian = system.evaluate(u[None])[1][0]
-    inverse = np.linalg.pinv(jacobian, rcond=_SINGULAR)
-    means = np.array(system.basis.means_fixed(measure, bits), dtype=object)
+    inverse = np.linalg.pinv(system.evaluate(u[None])[1][0], rcond=_SINGULAR)
+    means = system.basis.means_fixed(system.problem.measure, bits)
     exact = np.array([int(math.ldexp(x, 60)) << (bits - 60) for x in u], dtype=object)
     goal = 1 << (bits - math.ceil((digits + 6) * math.log2(10)))
     last = None
@@ -40,8 +39,7 @@ def refine(system: System, measure: Measure, u: NDArray[np.float64], digits: int
         residual = -means
         for block in system.blocks:
             values = _values_fixed(exact, block, bits)
-            weights = exact[block.weights]
-            residual = residual + (weights.dot(system.basis.values_fixed(values, block.type, bits)) >> bits)
+            residual = residual + system.basis.sums_fixed(values, exact[block.weights], block.type, bits)
         size = max(abs(r) for r in residual)
         if size < goal:
             return _orbits(system, exact, bits)
@@ -58,9 +56,9 @@ def _values_fixed(exact: IntArray, block: Block, bits: int) -> IntArray:
     """Distinct coordinates of the block's orbits, the last from the sum; shape (count, k)."""
     free = exact[block.coordinates].reshape(block.count, block.free)
     last = np.full(block.count, 1 << bits, dtype=object)
-    for j, m in enumerate(block.type[:-1]):
+    for j, m in enumerate(block.type.multiplicities[:-1]):
         last = last - m * free[:, j]
-    return np.column_stack([free, last // block.type[-1]])
+    return np.column_stack([free, last // block.type.multiplicities[-1]])
 
 
 def _orbits(system: System, exact: IntArray, bits: int) -> Orbits | None:

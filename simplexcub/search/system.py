@@ -7,51 +7,58 @@ per basis function: Σ_orbits weight · φ_i(representative) = E[φ_i].
 from __future__ import annotations
 
 from dataclasses import dataclass
-from itertools import pairwise
 
 import numpy as np
 from numpy.typing import NDArray
 
-from simplexcub.basis import SymmetricBasis
-from simplexcub.search.counts import Counts
-from simplexcub.symmetry import orbit_size
+from simplexcub.invariants import Basis, invariant_basis, mean_vector
+from simplexcub.measures import Measure
+from simplexcub.search.counts import Counts, random_values
+from simplexcub.symmetry import Group, OrbitType
 
 FloatArray = NDArray[np.float64]
+
+
+@dataclass(frozen=True)
+class Problem:
+    """What is searched for: a measure, a degree and the symmetry of the node set."""
+
+    measure: Measure
+    degree: int
+    group: Group
+
+    @property
+    def basis(self) -> Basis:
+        return invariant_basis(self.group, self.degree)
 
 
 @dataclass(frozen=True)
 class Block:
     """The orbits of one type: where their weights and coordinates stand among the unknowns."""
 
-    type: tuple[int, ...]
+    type: OrbitType
     count: int
     weights: slice
     coordinates: slice
 
     @property
     def free(self) -> int:
-        return len(self.type) - 1
+        return self.type.unknowns - 1
 
 
 class System:
-    """Residuals, Jacobians and the inside-constraints of all candidates with the same orbit counts.
+    """Residuals, Jacobians and the inside-constraints of all candidates with the same orbit counts."""
 
-    Parameters
-    ----------
-    basis : SymmetricBasis
-    means : ndarray, shape (E,)
-        E[φ_i].
-    counts : Counts
-    """
-
-    def __init__(self, basis: SymmetricBasis, means: FloatArray, counts: Counts) -> None:
-        self.basis = basis
-        self.means = means
+    def __init__(self, problem: Problem, counts: Counts) -> None:
+        self.problem = problem
+        self.counts = counts
+        self.basis = problem.basis
+        self.means = mean_vector(problem.group, problem.degree, problem.measure)
         self.blocks: list[Block] = []
         orbits = sum(c for _, c in counts)
         w, x = 0, orbits
         for type_, count in counts:
-            step = count * (len(type_) - 1)
+            step = count * (type_.unknowns - 1)
             self.blocks.append(Block(type_, count, slice(w, w + count), slice(x, x + step)))
             w, x = w + count, x + step
         self.orbits = orbits
@@ -62,7 +69,7 @@ class System:
         """(G, g): every weight and every coordinate of a candidate u, as G u + g; all must stay ≥ 0."""
         rows, offsets = [np.eye(self.size)], [np.zeros(self.size)]
         for block in self.blocks:
-            m = np.array(block.type, dtype=float)
+            m = np.array(block.type.multiplicities, dtype=float)
             for i in range(block.count):
                 row = np.zeros(self.size)
                 start = block.coordinates.start + i * block.free
@@ -74,7 +81,7 @@ class System:
     def values(self, u: FloatArray, block: Block) -> FloatArray:
         """Distinct coordinates of the block's orbits; shape (B, count, k)."""
         free = u[:, block.coordinates].reshape(len(u), block.count, block.free)
-        m = np.array(block.type, dtype=float)
+        m = np.array(block.type.multiplicities, dtype=float)
         last = (1.0 - free @ m[:-1]) / m[-1]
         return np.concatenate([free, last[:, :, None]], axis=2)
 
@@ -84,7 +91,7 @@ class System:
         residual = np.broadcast_to(-self.means, (batch, count)).copy()
         jacobian = np.empty((batch, self.size, count))
         for block in self.blocks:
-            k = len(block.type)
+            k = block.type.unknowns
             jet = self.basis.jet(self.values(u, block).reshape(-1, k), block.type)
             jet = jet.reshape(batch, block.count, k, count)
             weights = u[:, block.weights]
@@ -97,10 +104,12 @@ class System:
         """Random candidates inside the simplex, weights in proportion to orbit size but for noise."""
         u = np.empty((batch, self.size))
         for block in self.blocks:
-            points = rng.dirichlet(np.ones(sum(block.type)), (batch, block.count))
-            edges = np.cumsum((0, *block.type))
-            means = [points[:, :, a:b].mean(axis=2) for a, b in pairwise(edges[:-1])]
-            u[:, block.coordinates] = np.stack(means, axis=2).reshape(batch, -1) if means else 0.0
-            u[:, block.weights] = orbit_size(block.type) * rng.uniform(0.5, 1.5, (batch, block.count))
+            points = rng.dirichlet(np.ones(self.problem.group.n), (batch, block.count))
+            u[:, block.coordinates] = random_values(block.type, points)[..., :-1].reshape(batch, -1)
+            u[:, block.weights] = block.type.size * rng.uniform(0.5, 1.5, (batch, block.count))
         u[:, : self.orbits] /= u[:, : self.orbits].sum(axis=1, keepdims=True)
         return u
+
+    def slack(self, u: FloatArray) -> FloatArray:
+        """Distances of weights and coordinates from zero; shape (B, constraints)."""
+        return u @ self.slack_matrix.T + self.slack_offset

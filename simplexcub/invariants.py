@@ -1,0 +1,140 @@
+"""Bases of the polynomials that a permutation group leaves unchanged, one interface for every group.
+
+A basis answers four questions: how many functions it has, their values and derivatives at representatives of orbits,
+their means over a measure, and the exact sums over whole orbits in long integers. For S_N the functions are those of
+:mod:`simplexcub.basis`; for every other group they are orthonormal combinations U of the polynomials of
+:mod:`simplexcub.jacobi`, degree by degree: the kernel of Σ_g (2 − D(g) − D(g)ᵀ) over the generators g, with D(g) the
+orthogonal matrix of the substitution λ → g λ.
+"""
+
+from __future__ import annotations
+
+import math
+from functools import lru_cache
+from typing import Protocol
+
+import numpy as np
+from numpy.typing import NDArray
+
+from simplexcub.basis import fixed_point, flat_points, symmetric_basis
+from simplexcub.jacobi import jacobi_basis
+from simplexcub.measures import Measure
+from simplexcub.symmetry import Group, OrbitType
+
+FloatArray = NDArray[np.float64]
+IntArray = NDArray[np.object_]  # Python integers of any length
+
+_CHUNK_POINTS = 4096
+
+
+class Basis(Protocol):
+    """What the search needs to know of the polynomials it works on."""
+
+    def __len__(self) -> int: ...
+
+    def jet(self, values: FloatArray, type_: OrbitType) -> FloatArray:
+        """Functions and derivatives at orbit representatives given by distinct coordinates; shape (P, k, E)."""
+        ...
+
+    def sums_fixed(self, values: IntArray, weights: IntArray, type_: OrbitType, bits: int) -> IntArray:
+        """Σ over the orbits of weight · mean of each function over the orbit, scaled by 2^bits; shape (E,)."""
+        ...
+
+    def means_fixed(self, measure: Measure, bits: int) -> IntArray:
+        """E[φ] of every function, scaled by 2^bits; shape (E,)."""
+        ...
+
+
+class FullInvariants:
+    """Symmetric polynomials, in the interface of :class:`Basis`."""
+
+    def __init__(self, n: int, degree: int) -> None:
+        self._basis = symmetric_basis(n, degree)
+
+    def __len__(self) -> int:
+        return len(self._basis)
+
+    def jet(self, values: FloatArray, type_: OrbitType) -> FloatArray:
+        return self._basis.jet(values, type_.multiplicities)
+
+    def sums_fixed(self, values: IntArray, weights: IntArray, type_: OrbitType, bits: int) -> IntArray:
+        sums: IntArray = weights.dot(self._basis.values_fixed(values, type_.multiplicities, bits)) >> bits
+        return sums
+
+    def means_fixed(self, measure: Measure, bits: int) -> IntArray:
+        return np.array(self._basis.means_fixed(measure, bits), dtype=object)
+
+
+class SubgroupInvariants:
+    """Polynomials that a proper subgroup of S_N leaves unchanged."""
+
+    def __init__(self, group: Group, degree: int) -> None:
+        self._group = group
+        self._basis = jacobi_basis(group.n, degree)
+        self._trivial = not group.generators
+        self._combine = np.eye(len(self._basis)) if self._trivial else self._kernel()
+
+    def _kernel(self) -> FloatArray:
+        basis, n = self._basis, self._group.n
+        nodes, weights = flat_points(n, self._basis.degree)
+        moved = [np.zeros((len(basis), len(basis))) for _ in self._group.generators]
+        for start in range(0, len(nodes), _CHUNK_POINTS):
+            part = slice(start, start + _CHUNK_POINTS)
+            here = basis.values(nodes[part]) * weights[part]
+            for matrix, g in zip(moved, self._group.generators, strict=True):
+                matrix += here @ basis.values(nodes[part][:, g]).T
+        total = sum((2 * np.eye(len(basis)) - d - d.T for d in moved), np.zeros((len(basis), len(basis))))
+        columns = []
+        for d in range(basis.degree + 1):
+            rows = np.flatnonzero(basis.degrees == d)
+            eigenvalues, vectors = np.linalg.eigh(total[np.ix_(rows, rows)])
+            for vector in vectors.T[eigenvalues < 1e-6]:
+                column = np.zeros(len(basis))
+                column[rows] = vector
+                columns.append(column)
+        return np.array(columns).T
+
+    def __len__(self) -> int:
+        return self._combine.shape[1]
+
+    def jet(self, values: FloatArray, type_: OrbitType) -> FloatArray:
+        pattern = np.array(type_.pattern)
+        m = type_.multiplicities
+        k = len(m)
+        directions = np.array([(pattern == d) - m[d] / m[-1] * (pattern == k - 1) for d in range(k - 1)], dtype=float)
+        jet = self._basis.jet(values[:, pattern], directions.reshape(k - 1, len(pattern)))
+        if not self._trivial:
+            jet = (self._combine.T @ jet.reshape(len(jet), -1)).reshape(len(self), k, len(values))
+        return jet.transpose(2, 1, 0)
+
+    def sums_fixed(self, values: IntArray, weights: IntArray, type_: OrbitType, bits: int) -> IntArray:
+        # The combination is rounded, so only the sum over whole orbits is invariant to the last digit.
+        images = np.array(self._group.arrangements(type_))
+        nodes = values[:, images].reshape(-1, self._group.n)
+        shares = np.repeat(weights, len(images)) // len(images)
+        return self._mix(self._basis.values_fixed(nodes, bits).dot(shares) >> bits, bits)
+
+    def means_fixed(self, measure: Measure, bits: int) -> IntArray:
+        return self._mix(self._basis.means_fixed(measure, bits), bits)
+
+    def _mix(self, sums: IntArray, bits: int) -> IntArray:
+        scaled: IntArray = (sums * fixed_point(self._basis.norms, bits)) >> bits
+        if self._trivial:
+            return scaled
+        mixed: IntArray = scaled.dot(fixed_point(self._combine, bits)) >> bits
+        return mixed
+
+
+@lru_cache(maxsize=32)
+def invariant_basis(group: Group, degree: int) -> Basis:
+    """The invariants of `group` up to `degree`, built once per process."""
+    return FullInvariants(group.n, degree) if group.is_full else SubgroupInvariants(group, degree)
+
+
+@lru_cache(maxsize=64)
+def mean_vector(group: Group, degree: int, measure: Measure) -> FloatArray:
+    """E[φ] of every invariant in double precision, rounded once from exact moments."""
+    bits = 120
+    means = np.array([math.ldexp(float(m), -bits) for m in invariant_basis(group, degree).means_fixed(measure, bits)])
+    means.flags.writeable = False
+    return means
