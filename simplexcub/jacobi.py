@@ -28,6 +28,8 @@ from simplexcub.measures import Measure
 FloatArray = NDArray[np.float64]
 IntArray = NDArray[np.object_]  # Python integers of any length
 
+_CACHED_POINTS = 256  # worked on at once, so that all tables of a point stay in the processor's cache
+
 
 class JacobiBasis:
     """All polynomials of degree ≤ `degree` on the simplex of `n` components.
@@ -78,6 +80,13 @@ class JacobiBasis:
         ndarray, shape (E, k, P)
             Functions first; entry 0 of the second axis the value, then one derivative per direction.
         """
+        out = np.empty((len(self), len(directions) + 1, len(x)))
+        for start in range(0, len(x), _CACHED_POINTS):
+            part = slice(start, start + _CACHED_POINTS)
+            out[:, :, part] = self._jet(x[part], directions)
+        return out
+
+    def _jet(self, x: FloatArray, directions: FloatArray) -> FloatArray:
         s = x[:, ::-1].cumsum(axis=1)[:, ::-1].T
         ahead = directions[:, ::-1].cumsum(axis=1)[:, ::-1]
         axes = []

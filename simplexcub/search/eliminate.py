@@ -20,7 +20,8 @@ from simplexcub.search.system import FloatArray, Problem, System
 
 _POOL = 6  # solutions kept at each level
 _SHAKES = 4  # times a level is shaken before the walk gives up
-_BATCH_NUMBERS = 8_000_000  # of Jacobian entries worked on at once
+_BATCH = 8  # candidates tried at once, those with the least to lose first
+_ITERATIONS = 50
 
 
 def tchakaloff_start(problem: Problem, rng: np.random.Generator) -> tuple[Counts, FloatArray] | None:
@@ -94,11 +95,11 @@ def _drop(
     for smaller in sorted(children, key=node_count):
         candidates = [v for _, v in sorted(children[smaller], key=lambda pair: pair[0])]
         reduced = System(problem, smaller)
-        batch = int(np.clip(_BATCH_NUMBERS // (reduced.size * len(reduced.basis)), 4, 200))
-        for start in range(0, len(candidates), batch):
+        for start in range(0, len(candidates), _BATCH):
             if stop():
                 return None
-            solved = solve_batch(reduced, np.array(candidates[start : start + batch]))
+            starts = np.array(candidates[start : start + _BATCH])
+            solved = solve_batch(reduced, starts, iterations=_ITERATIONS, enough=1)
             if len(solved):
                 best = np.argsort(-reduced.slack(solved).min(axis=1))[:_POOL]
                 return smaller, solved[best]

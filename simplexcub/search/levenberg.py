@@ -18,15 +18,30 @@ FloatArray = NDArray[np.float64]
 CONVERGED = 1e-13
 
 
-def solve_batch(system: System, u: FloatArray, *, iterations: int = 120, keep: float = 0.05) -> FloatArray:
-    """Run the batch; return the candidates that solve the equations inside the simplex, shape (S, size)."""
+def solve_batch(
+    system: System, u: FloatArray, *, iterations: int = 120, keep: float = 0.05, enough: int | None = None
+) -> FloatArray:
+    """Run the batch; return the candidates that solve the equations inside the simplex, shape (S, size).
+
+    Parameters
+    ----------
+    u : ndarray, shape (B, size)
+        Starts; overwritten.
+    iterations : int
+        Most steps of one candidate; those that stop gaining are given up sooner.
+    keep : float
+        Share of itself that every weight and coordinate keeps in one step.
+    enough : int, optional
+        Return as soon as so many candidates have solved the equations.
+    """
     residual, jacobian = system.evaluate(u)
     cost = np.einsum("be,be->b", residual, residual)
     damping = 1e-2 * np.ones(len(u))
     best_before = cost.copy()
     solved: list[FloatArray] = []
     for iteration in range(1, iterations + 1):
-        step = _damped_step(residual, jacobian, damping * np.minimum(cost, 1.0) ** 0.5)
+        scale = system.scale(u)
+        step = scale * _damped_step(residual, jacobian * scale[:, None, :], damping * np.minimum(cost, 1.0) ** 0.5)
         slack = system.slack(u)
         change = step @ system.slack_matrix.T
         with np.errstate(divide="ignore", invalid="ignore"):
@@ -45,6 +60,8 @@ def solve_batch(system: System, u: FloatArray, *, iterations: int = 120, keep: f
         done = cost < CONVERGED**2
         if done.any():
             solved.append(u[done])
+            if enough is not None and sum(map(len, solved)) >= enough:
+                break
         alive = ~done & (damping < 1e12)
         if iteration % 15 == 0:
             alive &= cost < 0.5 * best_before

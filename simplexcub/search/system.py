@@ -113,3 +113,13 @@ class System:
     def slack(self, u: FloatArray) -> FloatArray:
         """Distances of weights and coordinates from zero; shape (B, constraints)."""
         return u @ self.slack_matrix.T + self.slack_offset
+
+    def scale(self, u: FloatArray) -> FloatArray:
+        """How far each unknown may move before its orbit meets the boundary, in units of the others; shape (B, size)."""
+        out = np.empty_like(u)
+        out[:, : self.orbits] = u[:, : self.orbits] * self.orbits
+        for block in self.blocks:
+            values = self.values(u, block)
+            room = np.minimum(values[..., :-1], values[..., -1:])
+            out[:, block.coordinates] = room.reshape(len(u), -1) * self.problem.group.n
+        return out
