@@ -212,8 +212,9 @@ def rule_from_nodes(
     *,
     digits: int,
     provenance: Provenance,
+    symmetry: str = "none",
 ) -> Rule:
-    """A rule with no symmetry, from nodes, shape (M, N), and weights, shape (M,), in extended precision."""
+    """A rule from nodes, shape (M, N), and weights, shape (M,), in extended precision."""
     printed = tuple(tuple(to_decimal(x, digits) for x in node) for node in nodes)
     return Rule(
         measure,
@@ -221,7 +222,7 @@ def rule_from_nodes(
         printed,
         tuple(to_decimal(w, digits) for w in weights),
         provenance,
-        symmetry="none",
+        symmetry=symmetry,
         digits=digits,
     )
 

@@ -3,27 +3,33 @@
 from __future__ import annotations
 
 import datetime
-import os
-from collections.abc import Callable, Iterator
-from concurrent.futures import Executor, ProcessPoolExecutor
-from contextlib import contextmanager
+from collections.abc import Callable
+from concurrent.futures import Executor
 from dataclasses import replace
-from multiprocessing import get_context
+from pathlib import Path
 from typing import Literal
 
 import simplexcub
 from simplexcub.errors import InputError
-from simplexcub.measures import Measure
-from simplexcub.rule import Provenance, Rule, rule_from_orbits
+from simplexcub.measures import Dirichlet, Measure
+from simplexcub.rule import Provenance, Rule, rule_from_nodes, rule_from_orbits
 from simplexcub.search.conical import MOST_NODES, conical_rule
+from simplexcub.search.driver import Budget, Found, Progress, Search
 from simplexcub.search.gauss import gauss_rule
-from simplexcub.search.orbits import Budget, Progress, find_orbits
+from simplexcub.search.record import Record
+from simplexcub.search.system import Problem
+from simplexcub.search.workers import Workers, local_workers
+from simplexcub.symmetry import Group, named_group
 
 __all__ = ["Progress", "solve"]
 
-_SYMMETRIES = ("full", "none")
 _SPACES = ("all",)
-_THREADS = ("OMP_NUM_THREADS", "OPENBLAS_NUM_THREADS", "MKL_NUM_THREADS")
+# Node counts measured over degrees 3 to 12: few symmetries first, since that is where the fewest nodes were found.
+_PROMISE = {
+    3: ("cyclic", "stabiliser", "none", "full"),
+    4: ("product-2-2", "dihedral", "stabiliser", "klein", "cyclic", "none", "full"),
+}
+_PROMISE_ELSE = ("stabiliser", "none", "full")
 
 
 def solve(
@@ -31,19 +37,19 @@ def solve(
     degree: int,
     *,
     space: Literal["all"] = "all",
-    symmetry: Literal["full", "none"] = "full",
+    symmetry: str = "full",
     digits: int = 50,
     seed: int = 0,
     budget: float = 60.0,
     jobs: int = 1,
+    executor: Executor | None = None,
+    resume: str | Path | None = None,
     progress: Callable[[Progress], None] | None = None,
 ) -> Rule:
     """A rule with positive weights and nodes inside, exact for all polynomials of the given degree.
 
-    N = 2 gives the Gauss rule. For N ≥ 3 and a symmetric measure, fully symmetric rules are searched with as few
-    nodes as can be; if the budget ends before any is found, the conical-product rule is returned instead, and
-    ``rule.provenance.method`` says so. A measure without full symmetry, or ``symmetry="none"``, gets the
-    conical-product rule at once.
+    N = 2 gives the Gauss rule. For N ≥ 3 a rule with as few nodes as can be is searched; if the budget ends before any
+    is found, the conical-product rule is returned instead, and ``rule.provenance.method`` says so.
 
     Parameters
     ----------
@@ -52,8 +58,11 @@ def solve(
         At least 1. A Gauss rule reaches the next odd degree, which is then the rule's degree.
     space : {"all"}
         What the rule is exact for: every polynomial.
-    symmetry : {"full", "none"}
-        Whether the node set is invariant under all permutations.
+    symmetry : str
+        Permutations that leave the node set unchanged: ``full``; ``alternating``, ``dihedral``, ``cyclic``; ``klein``
+        (N = 4); ``stabiliser`` of the last component; ``product-2-1`` and the like, within consecutive blocks;
+        ``none``. Fewer symmetries often need fewer nodes. ``best`` tries several and keeps the fewest nodes. For a
+        Dirichlet measure with unequal α, ``full`` means the permutations among components of equal α.
     digits : int
         Significant digits of nodes and weights, at least 5.
     seed : int
@@ -62,13 +71,17 @@ def solve(
         Seconds of search. The search ends by itself when every cheaper structure has had its share of starts.
     jobs : int
         Processes to search with. More than one needs the usual ``if __name__ == "__main__"`` guard in a script.
+    executor : concurrent.futures.Executor, optional
+        Searches there instead, with `jobs` tasks at a time.
+    resume : path, optional
+        Folder that remembers finished work; a search that was stopped goes on from there.
     progress : callable, optional
         Called with a :class:`Progress` now and then.
 
     Raises
     ------
     InputError
-        A parameter out of range.
+        A parameter out of range, or a symmetry that the measure does not have.
     NothingFound
         Nothing was found and the conical product would be unreasonably large.
 
@@ -81,54 +94,99 @@ def solve(
     --------
     >>> import simplexcub as sc
     >>> rule = sc.solve(sc.flat(2), degree=3, digits=10)
-    >>> rule.node_decimals[0]
+    >>> sorted(rule.node_decimals)[0]
     ('0.2113248654', '0.7886751346')
     """
-    _check(degree=degree, space=space, symmetry=symmetry, digits=digits, seed=seed, budget=budget, jobs=jobs)
+    _check(degree=degree, space=space, digits=digits, seed=seed, budget=budget, jobs=jobs)
+    groups = _groups(measure, symmetry)
     package = f"simplexcub {simplexcub.__version__}"
     provenance = Provenance(package, seed, datetime.datetime.now(datetime.UTC).date().isoformat(), "Gauss")
     if measure.N == 2:
         return gauss_rule(measure, degree, digits=digits, provenance=provenance)
-    product = replace(provenance, method="conical product")
-    if measure.is_symmetric and symmetry == "full":
-        allowance = Budget(budget)
-        with _workers(jobs) as executor:
-            orbits = find_orbits(
-                measure,
-                degree,
-                digits=digits,
-                seed=seed,
-                budget=allowance,
-                most_nodes=MOST_NODES,
-                executor=executor,
-                progress=progress,
-            )
-        if orbits is not None:
-            found = replace(provenance, method="orbit search")
-            return rule_from_orbits(measure, degree, orbits, digits=digits, provenance=found)
-    return conical_rule(measure, degree, digits=digits, provenance=product)
+    record = None if resume is None else Record(resume)
+    if executor is None:
+        with local_workers(jobs, record) as workers:
+            found = _search(groups, measure, degree, digits, seed, budget, workers, progress)
+    else:
+        workers = Workers(lambda: executor, jobs, record, owned=False)
+        found = _search(groups, measure, degree, digits, seed, budget, workers, progress)
+    if found is not None:
+        return _rule(found, digits, replace(provenance, method="orbit search"))
+    return conical_rule(measure, degree, digits=digits, provenance=replace(provenance, method="conical product"))
 
 
-@contextmanager
-def _workers(jobs: int) -> Iterator[Executor | None]:
-    """A pool of processes with one linear-algebra thread each, or None for one job."""
-    if jobs == 1:
-        yield None
-        return
-    before = {name: os.environ.get(name) for name in _THREADS}
-    os.environ.update(dict.fromkeys(_THREADS, "1"))  # inherited by the workers; this process has read its own already
-    try:
-        with ProcessPoolExecutor(jobs, mp_context=get_context("spawn")) as pool:
-            yield pool
-    finally:
-        for name, value in before.items():
-            if value is None:
-                os.environ.pop(name, None)
-            else:
-                os.environ[name] = value
+def _search(
+    groups: list[Group],
+    measure: Measure,
+    degree: int,
+    digits: int,
+    seed: int,
+    budget: float,
+    workers: Workers,
+    progress: Callable[[Progress], None] | None,
+) -> Found | None:
+    """The best rule over the groups, each with its share of the budget; an interrupt keeps the best so far."""
+    best: Found | None = None
+    allowance = Budget(budget)
+    for i, group in enumerate(groups):
+        share = Budget((budget - allowance.elapsed) / (len(groups) - i))
+        most = MOST_NODES if best is None else best.nodes - 1
+        search = Search(
+            Problem(measure, degree, group),
+            digits=digits,
+            seed=seed,
+            budget=share,
+            workers=workers,
+            most_nodes=most,
+            progress=progress,
+        )
+        try:
+            search.run()
+        except KeyboardInterrupt:
+            if search.best is None and best is None:
+                raise
+            return search.best or best
+        best = search.best or best
+    return best
 
 
-def _check(*, degree: int, space: str, symmetry: str, digits: int, seed: int, budget: float, jobs: int) -> None:
+def _rule(found: Found, digits: int, provenance: Provenance) -> Rule:
+    problem = found.problem
+    if problem.group.is_full:
+        orbits = [(t.multiplicities, values, weight) for t, values, weight in found.orbits]
+        return rule_from_orbits(problem.measure, problem.degree, orbits, digits=digits, provenance=provenance)
+    nodes, weights = [], []
+    for type_, values, weight in found.orbits:
+        for pattern in problem.group.arrangements(type_):
+            nodes.append([values[label] for label in pattern])
+            weights.append(weight / type_.size)
+    return rule_from_nodes(
+        problem.measure,
+        problem.degree,
+        nodes,
+        weights,
+        digits=digits,
+        provenance=provenance,
+        symmetry=problem.group.name,
+    )
+
+
+def _groups(measure: Measure, symmetry: str) -> list[Group]:
+    """The groups to search with, each checked to leave the measure unchanged."""
+    alpha = measure.alpha if isinstance(measure, Dirichlet) else ()
+    if symmetry == "best":
+        names = _PROMISE.get(measure.N, _PROMISE_ELSE) if measure.is_symmetric else ("alpha", "none")
+        return [named_group(name, measure.N, alpha) for name in names]
+    name = "alpha" if symmetry == "full" and not measure.is_symmetric else symmetry
+    group = named_group(name, measure.N, alpha)
+    if not measure.is_symmetric and any(alpha[i] != alpha[j] for g in group.generators for i, j in enumerate(g)):
+        raise InputError(
+            f"symmetry must leave {measure} unchanged", symmetry, "Use full (components of equal alpha) or none."
+        )
+    return [group]
+
+
+def _check(*, degree: int, space: str, digits: int, seed: int, budget: float, jobs: int) -> None:
     for name, value, least in (("degree", degree, 1), ("digits", digits, 5), ("seed", seed, 0), ("jobs", jobs, 1)):
         if isinstance(value, bool) or not isinstance(value, int) or value < least:
             raise InputError(f"{name} must be an integer of at least {least}", value)
@@ -136,5 +194,3 @@ def _check(*, degree: int, space: str, symmetry: str, digits: int, seed: int, bu
         raise InputError("budget must be a positive number of seconds", budget)
     if space not in _SPACES:
         raise InputError(f"space must be one of {', '.join(_SPACES)}", space)
-    if symmetry not in _SYMMETRIES:
-        raise InputError(f"symmetry must be one of {', '.join(_SYMMETRIES)}", symmetry)

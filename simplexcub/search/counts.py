@@ -9,7 +9,8 @@ from __future__ import annotations
 
 from collections.abc import Iterator
 from functools import lru_cache
-from itertools import pairwise
+from itertools import islice, pairwise
+from math import comb
 
 import numpy as np
 
@@ -21,6 +22,7 @@ Condition = tuple[frozenset[OrbitType], int]
 
 _RANK_TOLERANCE = 1e-9
 _MOST_UNIONS = 5_000  # of strata; further ones would only repeat what these ask
+_MOST_STRUCTURES = 2_000  # of one node count
 
 
 def node_count(counts: Counts) -> int:
@@ -60,19 +62,22 @@ def allowed(counts: Counts, wanted: list[Condition]) -> bool:
     return all(sum(c * t.unknowns for t, c in counts if t in s) >= need for s, need in wanted)
 
 
-def possible_counts(group: Group, degree: int, *, most_nodes: int) -> Iterator[Counts]:
-    """Count vectors that pass every condition, by rising number of nodes, those with most unknowns first."""
+def possible_counts(group: Group, degree: int, nodes: int) -> list[Counts]:
+    """Count vectors of exactly `nodes` nodes that pass every condition, those with most freedom first.
+
+    Freedom is the least excess of unknowns over any condition. At most ``_MOST_STRUCTURES`` are listed.
+    """
     wanted = conditions(group, degree)
     types = list(reversed(group.types))
-    masks = [np.array([t in s for t in types]) for s, _ in wanted]
-    # Most unknowns that one node can bring to a condition, among the types from position i on.
+    masks = [[t in s for t in types] for s, _ in wanted]
+    # The most unknowns that one node can bring to a condition, among the types from position i on.
     rates = [
-        [max((t.unknowns / t.size for t, m in zip(types[i:], mask[i:], strict=True) if m), default=0.0) for i in range(len(types) + 1)]
+        [max((t.unknowns / t.size for t, m in list(zip(types, mask, strict=True))[i:] if m), default=0.0) for i in range(len(types) + 1)]
         for mask in masks
     ]
 
-    def extend(i: int, left: int, lacks: list[float]) -> Iterator[tuple[int, ...]]:
-        if any(lack > rates[j][i] * left + 1e-9 for j, lack in enumerate(lacks)):
+    def extend(i: int, left: int, lacks: tuple[int, ...]) -> Iterator[tuple[int, ...]]:
+        if any(lack > rate[i] * left + 1e-9 for lack, rate in zip(lacks, rates, strict=True)):
             return
         if i == len(types):
             if left == 0:
@@ -83,16 +88,25 @@ def possible_counts(group: Group, degree: int, *, most_nodes: int) -> Iterator[C
         if t.unknowns == 1:
             most = min(most, 1)  # a stratum of one point
         for c in range(most, -1, -1):
-            rest = [lack - c * t.unknowns * mask[i] for lack, mask in zip(lacks, masks, strict=True)]
+            rest = tuple(lack - c * t.unknowns * mask[i] for lack, mask in zip(lacks, masks, strict=True))
             for tail in extend(i + 1, left - c * t.size, rest):
                 yield (c, *tail)
 
-    for nodes in range(1, most_nodes + 1):
-        found = [
-            tuple((t, c) for t, c in zip(reversed(types), reversed(cs), strict=True) if c)
-            for cs in extend(0, nodes, [float(need) for _, need in wanted])
-        ]
-        yield from sorted(found, key=lambda cs: -sum(c * t.unknowns for t, c in cs))
+    listed = islice(extend(0, nodes, tuple(need for _, need in wanted)), _MOST_STRUCTURES)
+    found = [tuple((t, c) for t, c in zip(group.types, reversed(cs), strict=True) if c) for cs in listed]
+
+    def freedom(counts: Counts) -> int:
+        return min(sum(c * t.unknowns for t, c in counts if t in s) - need for s, need in wanted)
+
+    return sorted(found, key=lambda cs: (-freedom(cs), sum(c * t.unknowns for t, c in cs)))
+
+
+def fewest_nodes(group: Group, degree: int) -> int:
+    """No positive rule inside has fewer nodes: the dimension of the polynomials of half the degree.
+
+    Reference: A. H. Stroud, *Approximate Calculation of Multiple Integrals* (1971), 3.15.
+    """
+    return comb(degree // 2 + group.n - 1, group.n - 1)
 
 
 def _row_space(values: np.ndarray) -> np.ndarray:

@@ -9,7 +9,7 @@ exists by V. Tchakaloff, Bull. Sci. Math. 81 (1957) 123, and is found by non-neg
 
 from __future__ import annotations
 
-from collections.abc import Callable, Iterator
+from dataclasses import dataclass, replace
 
 import numpy as np
 from scipy.optimize import nnls
@@ -46,58 +46,71 @@ def tchakaloff_start(problem: Problem, rng: np.random.Generator) -> tuple[Counts
     return tuple(counts), np.concatenate([*w, *x])
 
 
-def eliminate(
-    problem: Problem,
-    counts: Counts,
-    pool: FloatArray,
-    rng: np.random.Generator,
-    *,
-    stop: Callable[[], bool],
-) -> Iterator[tuple[Counts, FloatArray]]:
-    """Walk down from solutions `pool`, shape (S, unknowns), of one structure; yields every cheaper structure solved."""
+@dataclass(frozen=True)
+class Walk:
+    """Where an elimination walk stands.
+
+    Attributes
+    ----------
+    counts : Counts
+        The structure of the present solutions.
+    pool : ndarray, shape (S, unknowns)
+        A few solutions of it, inside the simplex.
+    at_once : int
+        How many orbits the next step tries to drop together.
+    shaken : int
+        How often the present level has been shaken.
+    ended : bool
+        Nothing more can be dropped, or no start was found.
+    """
+
+    counts: Counts
+    pool: FloatArray
+    at_once: int
+    shaken: int
+    ended: bool
+
+
+def set_out(problem: Problem, number: int, rng: np.random.Generator) -> Walk:
+    """The start of a walk, by non-negative least squares."""
+    start = tchakaloff_start(problem, rng)
+    if start is None:
+        return Walk((), np.empty((0, 0)), 1, 0, True)
+    counts, u = start
+    return Walk(counts, u[None], max(1, sum(c for _, c in counts) // 8), 0, False)
+
+
+def advance(problem: Problem, walk: Walk, rng: np.random.Generator) -> Walk:
+    """One step: drop orbits, or drop fewer at once next time, or shake, or give up."""
+    step = _drop(problem, walk)
+    if step is not None:
+        counts, pool = step
+        return Walk(counts, pool, min(walk.at_once, max(1, sum(c for _, c in counts) // 8)), 0, False)
+    if walk.at_once > 1:
+        return replace(walk, at_once=walk.at_once // 2)
+    if walk.shaken < _SHAKES:
+        shaken = walk.shaken + 1
+        return replace(walk, shaken=shaken, pool=_shake(System(problem, walk.counts), walk.pool, rng, 0.05 * shaken))
+    return replace(walk, ended=True)
+
+
+def _drop(problem: Problem, walk: Walk) -> tuple[Counts, FloatArray] | None:
+    """Solutions with `walk.at_once` orbits fewer, or None."""
+    system = System(problem, walk.counts)
     wanted = conditions(problem.group, problem.degree)
-    at_once = max(1, sum(c for _, c in counts) // 8)
-    shaken = 0
-    while not stop():
-        step = _drop(problem, counts, pool, at_once, wanted, stop)
-        if step is not None:
-            counts, pool = step
-            shaken = 0
-            yield counts, pool
-        elif at_once > 1:
-            at_once //= 2
-        elif shaken < _SHAKES:
-            shaken += 1
-            pool = _shake(System(problem, counts), pool, rng, 0.05 * shaken)
-        else:
-            return
-
-
-def _drop(
-    problem: Problem,
-    counts: Counts,
-    pool: FloatArray,
-    at_once: int,
-    wanted: list[tuple[frozenset[object], int]],
-    stop: Callable[[], bool],
-) -> tuple[Counts, FloatArray] | None:
-    """Solutions with `at_once` orbits fewer, or None."""
-    system = System(problem, counts)
     children: dict[Counts, list[tuple[float, FloatArray]]] = {}
-    for u in pool:
+    for u in walk.pool:
         significance = _significance(system, u)
         order = np.argsort(significance)
-        sets = [order[:at_once]] if at_once > 1 else [np.array([r]) for r in order]
+        sets = [order[: walk.at_once]] if walk.at_once > 1 else [np.array([r]) for r in order]
         for dropped in sets:
             smaller, v = _without(system, u, dropped)
-            if allowed(smaller, wanted):
+            if smaller and allowed(smaller, wanted):
                 children.setdefault(smaller, []).append((float(significance[dropped].sum()), v))
     for smaller in sorted(children, key=node_count):
         candidates = [v for _, v in sorted(children[smaller], key=lambda pair: pair[0])]
         reduced = System(problem, smaller)
         for start in range(0, len(candidates), _BATCH):
-            if stop():
-                return None
             starts = np.array(candidates[start : start + _BATCH])
             solved = solve_batch(reduced, starts, iterations=_ITERATIONS, enough=1)
             if len(solved):
@@ -122,6 +135,8 @@ def _without(system: System, u: FloatArray, dropped: np.ndarray) -> tuple[Counts
             counts.append((block.type, int(here.sum())))
             weights.append(u[block.weights][here])
             coordinates.append(u[block.coordinates].reshape(block.count, block.free)[here].ravel())
+    if not counts:
+        return (), u[:0]
     w = np.concatenate(weights)
     return tuple(counts), np.concatenate([w / w.sum(), *coordinates])
 

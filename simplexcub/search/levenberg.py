@@ -56,14 +56,14 @@ def solve_batch(
             new_jacobian[better],
             new_cost[better],
         )
-        damping = np.where(better, damping * 0.3, damping * 4.0)
+        damping = np.where(better, damping * 0.5, damping * 3.0)
         done = cost < CONVERGED**2
         if done.any():
             solved.append(u[done])
             if enough is not None and sum(map(len, solved)) >= enough:
                 break
         alive = ~done & (damping < 1e12)
-        if iteration % 15 == 0:
+        if iteration % 10 == 0:
             alive &= cost < 0.5 * best_before
             best_before = cost.copy()
         if not alive.all():

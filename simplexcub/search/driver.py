@@ -1,0 +1,158 @@
+"""The search for the rule with the fewest nodes: the order of work, and when to stop.
+
+First a few elimination walks come down from rules with many nodes; then random starts try the structures with fewer
+nodes than the best rule, from the fewest nodes upward. That repeats with more walks, more structures and more starts,
+until the rounds or the budget end. Tasks may run anywhere, but their results are taken in the order of the plan, so that the same seed
+gives the same rule however many workers there are.
+"""
+
+from __future__ import annotations
+
+import time
+from collections.abc import Callable, Sequence
+from dataclasses import dataclass
+
+from simplexcub.search.counts import Counts, fewest_nodes, node_count, possible_counts
+from simplexcub.search.eliminate import Walk
+from simplexcub.search.refine import Orbits, refine
+from simplexcub.search.system import FloatArray, Problem, System
+from simplexcub.search.tasks import Chunk, Leg, describe
+from simplexcub.search.workers import Workers
+
+WALKS = (2, 2, 4)  # elimination walks begun in each round
+CHUNKS = (1, 4, 15)  # chunks of starts that every structure gets in each round
+STRUCTURES = (12, 40, 2000)  # structures of one node count that are tried in each round
+
+
+@dataclass(frozen=True)
+class Progress:
+    """One report of a running search: a line for a person, and seconds since the start."""
+
+    text: str
+    elapsed: float
+
+
+class Budget:
+    """Wall-clock allowance of a search."""
+
+    def __init__(self, seconds: float) -> None:
+        self.start = time.monotonic()
+        self.seconds = seconds
+
+    @property
+    def elapsed(self) -> float:
+        return time.monotonic() - self.start
+
+    @property
+    def spent(self) -> bool:
+        return self.elapsed > self.seconds
+
+
+@dataclass(frozen=True)
+class Found:
+    """A solved structure: the candidate in double precision and its orbits in extended precision."""
+
+    problem: Problem
+    counts: Counts
+    candidate: FloatArray
+    orbits: Orbits
+
+    @property
+    def nodes(self) -> int:
+        return node_count(self.counts)
+
+
+class Search:
+    """One search; `best` holds the rule with the fewest nodes met so far.
+
+    Parameters
+    ----------
+    problem : Problem
+    digits, seed : int
+    budget : Budget
+    workers : Workers
+        Runs the tasks.
+    most_nodes : int
+        Rules with more nodes are of no interest.
+    progress : callable, optional
+    """
+
+    def __init__(
+        self,
+        problem: Problem,
+        *,
+        digits: int,
+        seed: int,
+        budget: Budget,
+        workers: Workers,
+        most_nodes: int,
+        progress: Callable[[Progress], None] | None = None,
+    ) -> None:
+        self.problem = problem
+        self.digits = digits
+        self.seed = seed
+        self.budget = budget
+        self.workers = workers
+        self.most_nodes = most_nodes
+        self.progress = progress
+        self.best: Found | None = None
+        self._began = 0
+        self._ended = 0
+
+    def run(self) -> None:
+        """Search until the rounds or the budget end."""
+        walks, chunks = 0, 0
+        for more_walks, more_chunks, structures in zip(WALKS, CHUNKS, STRUCTURES, strict=True):
+            self._walk(range(walks, walks + more_walks))
+            self._start(range(chunks, chunks + more_chunks), structures)
+            walks, chunks = walks + more_walks, chunks + more_chunks
+            if self.budget.spent or self._most() < fewest_nodes(self.problem.group, self.problem.degree):
+                return
+
+    def _most(self) -> int:
+        """Nodes of the largest rule that would still be an improvement."""
+        return self.most_nodes if self.best is None else self.best.nodes - 1
+
+    def _walk(self, numbers: Sequence[int]) -> None:
+        """Run walks side by side, a leg of each in turn."""
+        walks: dict[int, Walk | None] = dict.fromkeys(numbers)
+        leg = 0
+        while walks and not self.budget.spent:
+            legs = [Leg(self.problem, self.seed, number, leg, walk) for number, walk in walks.items()]
+            results = list(self.workers.run_all(legs))
+            for number, walk in zip(list(walks), results, strict=True):
+                self._report(f"walk {number + 1} at {describe(walk.counts)}" if walk.counts else "no start for a walk")
+                if walk.ended:
+                    del walks[number]
+                else:
+                    walks[number] = walk
+                if walk.counts and (walk.ended or walk.at_once == 1) and node_count(walk.counts) <= self._most():
+                    self._take(walk.counts, walk.pool)
+            leg += 1
+
+    def _start(self, numbers: Sequence[int], most_structures: int) -> None:
+        """Random starts for the structures below the best, from the fewest nodes upward until one is solved."""
+        for nodes in range(fewest_nodes(self.problem.group, self.problem.degree), self._most() + 1):
+            structures = possible_counts(self.problem.group, self.problem.degree, nodes)[:most_structures]
+            tasks = (Chunk(self.problem, counts, self.seed, number) for counts in structures for number in numbers)
+            for task, solutions in self.workers.in_order(tasks):
+                self._report(f"starts for {describe(task.counts)}")
+                if self._take(task.counts, solutions) or self.budget.spent:
+                    return
+
+    def _take(self, counts: Counts, solutions: FloatArray) -> bool:
+        """Keep the first of the solutions that can be refined to all digits."""
+        system = System(self.problem, counts)
+        for u in solutions:
+            orbits = refine(system, u, self.digits)
+            if orbits is not None:
+                self.best = Found(self.problem, counts, u, orbits)
+                return True
+        return False
+
+    def _report(self, text: str) -> None:
+        self._ended += 1
+        if self.progress is not None:
+            best = f"best so far {self.best.nodes} nodes" if self.best is not None else "no rule yet"
+            rate = self._ended / max(self.budget.elapsed, 1e-9)
+            self.progress(Progress(f"{best}; {text}; {rate:.1f} tasks/s", self.budget.elapsed))

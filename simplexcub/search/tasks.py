@@ -1,0 +1,82 @@
+"""The pieces of work a search is made of: chunks of random starts, and legs of elimination walks.
+
+A task is fixed by the problem, the seed and its number, and gives the same result wherever and whenever it runs.
+"""
+
+from __future__ import annotations
+
+import hashlib
+from dataclasses import dataclass
+
+import numpy as np
+
+from simplexcub.search.counts import Counts, node_count
+from simplexcub.search.eliminate import Walk, advance, set_out
+from simplexcub.search.levenberg import solve_batch
+from simplexcub.search.system import FloatArray, Problem, System
+
+_CHUNK_STARTS, _CHUNK_NUMBERS = 200, 4_000_000  # starts per chunk, fewer where their Jacobians hold more numbers
+_MOST_KEPT = 20  # solutions of a chunk that are passed on
+
+
+@dataclass(frozen=True)
+class Chunk:
+    """Random starts for one structure."""
+
+    problem: Problem
+    counts: Counts
+    seed: int
+    number: int
+
+    @property
+    def key(self) -> str:
+        """Name of this piece of work, the same in every process."""
+        return _digest(self.problem, "chunk", self.seed, self.number, [(t.pattern, c) for t, c in self.counts])
+
+    def run(self) -> FloatArray:
+        """Solutions inside the simplex, the ones furthest from the boundary first; shape (S, unknowns)."""
+        system = System(self.problem, self.counts)
+        starts = int(np.clip(_CHUNK_NUMBERS // (system.size * len(system.basis)), 4, _CHUNK_STARTS))
+        solved = solve_batch(system, system.starts(_generator(self.key), starts))
+        return solved[np.argsort(-system.slack(solved).min(axis=1, initial=np.inf))][:_MOST_KEPT]
+
+
+@dataclass(frozen=True)
+class Leg:
+    """One step of an elimination walk; `walk` is None at the start."""
+
+    problem: Problem
+    seed: int
+    walk_number: int
+    leg_number: int
+    walk: Walk | None
+
+    @property
+    def key(self) -> str:
+        """Name of this piece of work, the same in every process."""
+        return _digest(self.problem, "leg", self.seed, self.walk_number, self.leg_number)
+
+    def run(self) -> Walk:
+        """The walk after this step."""
+        rng = _generator(self.key)
+        return set_out(self.problem, self.walk_number, rng) if self.walk is None else advance(self.problem, self.walk, rng)
+
+
+def run_task(task: Chunk | Leg) -> FloatArray | Walk:
+    """Run a task in whichever process this is."""
+    return task.run()
+
+
+def describe(counts: Counts) -> str:
+    """Short text of a structure, e.g. ``12 nodes: 2 × (2,1) + 1 × (1,1,1)``."""
+    parts = " + ".join(f"{count} × ({','.join(map(str, t.multiplicities))})" for t, count in counts)
+    return f"{node_count(counts)} nodes: {parts}"
+
+
+def _digest(problem: Problem, *rest: object) -> str:
+    label = repr((sorted(problem.measure.parameters().items()), problem.degree, problem.group.name, rest))
+    return hashlib.sha256(label.encode()).hexdigest()
+
+
+def _generator(key: str) -> np.random.Generator:
+    return np.random.default_rng(np.frombuffer(bytes.fromhex(key), dtype=np.uint32))
