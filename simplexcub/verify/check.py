@@ -102,8 +102,8 @@ def verify(
 
     Notes
     -----
-    Residuals are absolute, so a late digit of a number much smaller than the others can be beyond their reach. Where full
-    symmetry or orbits are claimed it is still caught, since all copies of a number must then agree digit for digit.
+    Residuals are absolute, so a late digit of a number much smaller than the others can be beyond their reach. Where
+    full symmetry or orbits are claimed it is caught if the number has copies, since those must agree digit for digit.
 
     Examples
     --------
