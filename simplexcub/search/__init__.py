@@ -81,7 +81,7 @@ def solve(
     --------
     >>> import simplexcub as sc
     >>> rule = sc.solve(sc.flat(2), degree=3, digits=10)
-    >>> rule.node_decimals[0]
+    >>> sorted(rule.node_decimals)[0]
     ('0.2113248654', '0.7886751346')
     """
     _check(degree=degree, space=space, symmetry=symmetry, digits=digits, seed=seed, budget=budget, jobs=jobs)
