@@ -11,10 +11,26 @@ from pathlib import Path
 import pytest
 from hypothesis import settings
 
+from simplexcub.cli import main
+
 settings.register_profile("reproducible", derandomize=True, deadline=None, database=None)
 settings.load_profile("reproducible")
 
+Call = Callable[..., tuple[int, list[str], list[str]]]
 Run = Callable[..., subprocess.CompletedProcess[str]]
+
+
+@pytest.fixture
+def call(capsys: pytest.CaptureFixture[str]) -> Call:
+    """Runs a command in this process; returns its status and the lines of its two output streams."""
+
+    def run(*arguments: object) -> tuple[int, list[str], list[str]]:
+        capsys.readouterr()
+        status = main([str(argument) for argument in arguments])
+        out, err = capsys.readouterr()
+        return status, out.splitlines(), err.splitlines()
+
+    return run
 
 
 @pytest.fixture

@@ -25,8 +25,8 @@ from simplexcub.table import load
 
 PRODUCT_DEGREES = (1, 3, 5, 7, 11, 15, 23, 31, 47, 63, 95, 127, 191, 255)
 SEARCHED_DEGREES = (1, 2, 3, 4)
-LARGE_N = 5  # from here on product rules have thousands of points at any degree
-DIGITS = 17  # enough for float64
+SEARCHED_N = range(5, 8)  # below, products are cheap; above, listing the structures alone outlasts any budget
+DIGITS = 30  # twice what float64 holds, since weights with a density in them are small before they are normalised
 
 
 @dataclass(frozen=True)
@@ -113,7 +113,8 @@ def average(
         if len(rungs) > STEPS and estimated_error(rungs) <= tol:
             break
     if not rungs:
-        raise NothingFound(f"rule for {measure}", f"none was ready after {budget:g} s", "Allow a larger budget.")
+        remedy = "Average f over points drawn by measure.sample instead."
+        raise NothingFound(f"rule for {measure}", "N is too large for products and for the search", remedy)
     return Mean(rungs[-1].value, estimated_error(rungs), evaluations, how)
 
 
@@ -181,7 +182,7 @@ def _products(measure: Measure, above: int, clock: _Clock) -> Iterator[Rule]:
 
 
 def _searched(measure: Measure, above: int, clock: _Clock) -> Iterator[Rule]:
-    if measure.N < LARGE_N:
+    if measure.N not in SEARCHED_N:
         return
     for degree in SEARCHED_DEGREES:
         if degree > above:

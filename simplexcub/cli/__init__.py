@@ -81,7 +81,7 @@ def _dispatch(argv: list[str]) -> int:
     )
     parser.add_argument("--version", action="version", version=f"simplexcub {__version__}")
     parser.add_argument("command", metavar="COMMAND", help="one of the commands below")
-    name = parser.parse_args(argv).command
+    name = parser.parse_known_args(argv)[0].command  # whatever follows belongs to the command
     near = get_close_matches(name, COMMANDS, n=1)
     raise InputError(f"the command must be one of {', '.join(COMMANDS)}", repr(name), *(f"Nearest: {n}" for n in near))
 
