@@ -226,3 +226,13 @@ def test_a_binary_format_wants_a_file(call: Call, tmp_path: Path) -> None:
     assert (status, out, len(err)) == (2, [], 1)
     assert ".npz" in err[0]
     assert call("export", path, "--to", "npz", "-o", tmp_path / "table.npz") == (0, [], [])
+
+
+def test_a_full_disk_behind_standard_output_is_one_line(call: Call, monkeypatch: pytest.MonkeyPatch) -> None:
+    def full(*_: object, **__: object) -> None:
+        raise OSError(28, "No space left on device")
+
+    monkeypatch.setattr("simplexcub.cli.tables.catalogue", full)
+    status, out, err = call("tables")
+    assert (status, out, len(err)) == (2, [], 1)
+    assert "no space left on device" in err[0]
