@@ -242,6 +242,12 @@ def test_short_terminating_decimals_are_read_as_exact():
     report = verify(rule(flat(2), 1, [("0.5", "0.5")], ["1"], digits=1))
     assert report.exact_degree == 1
     assert report.verification.max_residual == "0"
+    # Flat, N = 4: vertices with 1/5 in all and the centre with 4/5 are exact at degree 2.
+    vertices = [tuple("01"[i == j] for j in range(4)) for i in range(4)]
+    terminating = rule(flat(4), 2, [*vertices, ("0.25",) * 4], ["0.05"] * 4 + ["0.8"], digits=2)
+    assert verify(terminating).reasons == ()
+    assert verify(terminating).exact_degree == 2
+    assert verify(terminating).verification.max_residual == "0"
     trapezium = rule(flat(2), 0, [("1", "0"), ("0", "1")], ["0.5", "0.5"], digits=1)
     assert verify(trapezium).exact_degree == 1
     assert not verify(rule(flat(2), 3, [("0.5", "0.5")], ["1"], digits=1)).holds

@@ -18,6 +18,7 @@ from __future__ import annotations
 import os
 import sys
 from collections.abc import Sequence
+from contextlib import suppress
 from difflib import get_close_matches
 from importlib import import_module
 
@@ -45,6 +46,10 @@ def main(argv: Sequence[str] | None = None) -> int:
     except BrokenPipeError:
         _silence_stdout()
         return 141
+    except OSError as error:  # files are the business of the floors below; what is left is standard output
+        _silence_stdout()
+        complain(f"the result must be written to standard output; got {(error.strerror or str(error)).lower()}")
+        return 2
     except KeyboardInterrupt:
         complain("interrupted")
         return 130
@@ -81,13 +86,15 @@ def _dispatch(argv: list[str]) -> int:
     )
     parser.add_argument("--version", action="version", version=f"simplexcub {__version__}")
     parser.add_argument("command", metavar="COMMAND", help="one of the commands below")
-    name = parser.parse_args(argv).command
+    name = parser.parse_known_args(argv)[0].command  # whatever follows belongs to the command
     near = get_close_matches(name, COMMANDS, n=1)
     raise InputError(f"the command must be one of {', '.join(COMMANDS)}", repr(name), *(f"Nearest: {n}" for n in near))
 
 
 def _silence_stdout() -> None:
     """Point standard output at nothing, or the interpreter complains once more when it flushes at exit."""
-    nothing = os.open(os.devnull, os.O_WRONLY)
-    os.dup2(nothing, sys.stdout.fileno())
-    os.close(nothing)
+    with suppress(OSError):  # a stream that stands in for it has no descriptor, and nothing to flush at exit
+        descriptor = sys.stdout.fileno()
+        nothing = os.open(os.devnull, os.O_WRONLY)
+        os.dup2(nothing, descriptor)
+        os.close(nothing)

@@ -14,7 +14,9 @@ class InterruptNoted:
         self.seen = False
 
     def __enter__(self) -> InterruptNoted:
-        self._before = signal.signal(signal.SIGINT, self._note)
+        self._before = signal.getsignal(signal.SIGINT)
+        if self._before is signal.default_int_handler:  # switched off in background jobs, and then it stays off
+            signal.signal(signal.SIGINT, self._note)
         return self
 
     def __exit__(self, kind: type[BaseException] | None, error: BaseException | None, at: TracebackType | None) -> None:

@@ -9,17 +9,17 @@ from __future__ import annotations
 import argparse
 import logging
 import sys
-from collections.abc import Callable, Iterable, Iterator, Sequence
+from collections.abc import Callable, Collection, Iterable, Iterator, Sequence
 from pathlib import Path
 
 from simplexcub.errors import SimplexcubError
 from simplexcub.measures import FAMILIES, Measure, flat, hilbert_schmidt
 from simplexcub.search import solve
-from simplexcub.table.catalogue import add, folder, kind_for, place_for, reindex
 from simplexcub.table.describe import counted
 from simplexcub.table.files import read_text
 from simplexcub.table.formats import save
 from simplexcub.table.reading import parse
+from simplexcub.table.shipped import add, folder, kind_for, place_for, reindex
 from simplexcub.verify import verify
 
 log = logging.getLogger(__name__)
@@ -29,12 +29,14 @@ DIGITS = 50
 DEGREES = {2: range(1, 42, 2), 3: range(1, 15), 4: range(1, 9)}
 
 
-def targets(families: Iterable[str] = (), sizes: Iterable[int] = ()) -> Iterator[tuple[Measure, int]]:
+def targets(
+    families: Collection[str] = (), sizes: Collection[int] = (), only: Collection[int] = ()
+) -> Iterator[tuple[Measure, int]]:
     """The (measure, degree) pairs of the shipped set, cheapest first; empty arguments stand for all."""
     for n, degrees in DEGREES.items():
         for measure in (flat(n), hilbert_schmidt(n)):
             if (not families or measure.family in families) and (not sizes or n in sizes):
-                yield from ((measure, degree) for degree in degrees)
+                yield from ((measure, degree) for degree in degrees if not only or degree in only)
 
 
 def build(
@@ -113,6 +115,7 @@ def main(argv: Sequence[str] | None = None) -> int:
     parser = argparse.ArgumentParser(prog="python -m simplexcub.table.build", description=__doc__)
     parser.add_argument("--measure", choices=FAMILIES, action="append", default=[], help="only this family")
     parser.add_argument("-N", type=int, choices=sorted(DEGREES), action="append", default=[], help="only this N")
+    parser.add_argument("-t", type=int, action="append", default=[], metavar="DEGREE", help="only this degree")
     parser.add_argument("--budget", type=float, default=60.0, metavar="SECONDS", help="for each rule (default 60)")
     parser.add_argument("--seed", type=int, default=0, help="of the search (default 0)")
     parser.add_argument("--jobs", type=int, default=1, help="processes (default 1)")
@@ -126,7 +129,7 @@ def main(argv: Sequence[str] | None = None) -> int:
             refresh(options.folder)
             return 0
         build(
-            () if options.index else targets(options.measure, options.N),
+            () if options.index else targets(options.measure, options.N, options.t),
             where=options.folder,
             budget=options.budget,
             seed=options.seed,

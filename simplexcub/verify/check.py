@@ -100,6 +100,11 @@ def verify(
         A measure with another N, a `max_degree` below the claimed degree, a space that cannot be verified, or an entry
         that is not a decimal number.
 
+    Notes
+    -----
+    Residuals are absolute, so a late digit of a number much smaller than the others can be beyond their reach. Where
+    full symmetry or orbits are claimed it is caught if the number has copies, since those must agree digit for digit.
+
     Examples
     --------
     >>> from simplexcub.measures import flat

@@ -256,7 +256,7 @@ def _monomial_sums(
             yield (*head, left), product.inner(powers[i][left], one)
             return
         least = -(-left // (last + 1 - i)) if descending else 0
-        for a in range(least, min(left, largest) + 1):
+        for a in range(min(left, largest), least - 1, -1):
             longer = product.times(powers[i][a], one) if a else product
             yield from walk(i + 1, left - a, a if descending else left - a, (*head, a), longer)
 
