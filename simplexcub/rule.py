@@ -92,7 +92,7 @@ class Rule:
         Summing to 1.
     space : {"all", "symmetric", "ordered"}
     symmetry : str
-        Group that leaves the node set unchanged: ``full`` or ``none``.
+        Group that leaves the node set unchanged, by its name in :func:`simplexcub.symmetry.named_group`.
     digits : int
         Significant digits of every decimal.
     orbits : tuple of Orbit

@@ -10,7 +10,7 @@ import math
 from collections.abc import Iterator
 from dataclasses import dataclass
 from functools import cached_property, lru_cache
-from itertools import permutations
+from itertools import pairwise
 
 from simplexcub.errors import InputError
 from simplexcub.moments.schur import distinct_permutations
@@ -150,7 +150,7 @@ def _parse_blocks(name: str, n: int) -> list[list[int]]:
 
 
 def _block_swaps(n: int, blocks: list[list[int]]) -> tuple[Permutation, ...]:
-    return tuple(_swap(n, a, b) for block in blocks for a, b in zip(block, block[1:], strict=False))
+    return tuple(_swap(n, a, b) for block in blocks for a, b in pairwise(block))
 
 
 def _swap(n: int, a: int, b: int) -> Permutation:

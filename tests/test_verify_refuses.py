@@ -158,15 +158,42 @@ def test_false_symmetry():
     refused(old, "symmetry full is claimed")
     assert verify(replace(old, symmetry="none")).holds
     refused(
-        replace(radon(), symmetry="icosahedral"), "symmetry icosahedral is claimed; only full and none can be checked"
+        replace(radon(), symmetry="icosahedral"),
+        "symmetry icosahedral is claimed, which cannot be checked: symmetry must be one of full",
     )
+    refused(replace(radon(), symmetry="klein"), "symmetry klein is claimed, which cannot be checked: ")
+    refused(replace(radon(), symmetry="product-2-2"), "symmetry product-2-2 is claimed, which cannot be checked: ")
     # Invariant under the transposition of the first two coordinates, not under all.
     half = rule(flat(3), 0, [("0.25", "0.25", "0.5")], ["1"], digits=2, symmetry="full")
     refused(half, "symmetry full is claimed")
     # Invariant under cyclic permutations only.
     cycle = [("0.125", "0.25", "0.625"), ("0.25", "0.625", "0.125"), ("0.625", "0.125", "0.25")]
     third = ["0.3333333333"] * 3
-    refused(rule(flat(3), 0, cycle, third, digits=10, symmetry="full"), "symmetry full is claimed")
+    for claim in ("full", "dihedral", "stabiliser", "product-2-1"):
+        refused(rule(flat(3), 0, cycle, third, digits=10, symmetry=claim), f"symmetry {claim} is claimed, but")
+    # Components of equal α may be exchanged: the last two here, not the first two.
+    unequal = dirichlet([1, 2, 2])
+    swapped = [("0.5", "0.125", "0.375"), ("0.5", "0.375", "0.125")]
+    for nodes in ([tuple(reversed(node)) for node in swapped], swapped[:1]):
+        refused(rule(unequal, 0, nodes, ["1"] if len(nodes) == 1 else ["0.5"] * 2, symmetry="alpha"), "symmetry alpha")
+
+
+@pytest.mark.parametrize(
+    "claim", ["full", "alternating", "dihedral", "cyclic", "stabiliser", "product-1-2", "alpha", "none"]
+)
+def test_symmetry_is_believed_where_the_decimals_have_it(claim):
+    report = verify(replace(radon(), symmetry=claim, orbits=radon().orbits if claim == "full" else ()))
+    assert report.holds, report.reasons
+
+
+def test_symmetry_of_smaller_groups_is_believed_where_the_decimals_have_it():
+    cycle = [("0.125", "0.25", "0.625"), ("0.25", "0.625", "0.125"), ("0.625", "0.125", "0.25")]
+    third = ["0.3333333333"] * 3
+    for claim in ("cyclic", "alternating", "none"):
+        assert verify(rule(flat(3), 0, cycle, third, digits=10, symmetry=claim)).holds
+    swapped = [("0.5", "0.125", "0.375"), ("0.5", "0.375", "0.125")]
+    for claim in ("alpha", "product-1-2"):
+        assert verify(rule(dirichlet([1, 2, 2]), 0, swapped, ["0.5", "0.5"], digits=3, symmetry=claim)).holds
 
 
 def test_false_equal_weights():

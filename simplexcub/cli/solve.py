@@ -3,17 +3,21 @@
 from __future__ import annotations
 
 import argparse
+from contextlib import ExitStack
 from pathlib import Path
 
+from simplexcub.cli.cluster import cluster_executor
 from simplexcub.cli.interrupt import InterruptNoted
 from simplexcub.cli.measure import add_measure, measure_of
 from simplexcub.cli.options import duration, whole
 from simplexcub.cli.output import ProgressLine, require_writable
 from simplexcub.cli.speech import complain
 from simplexcub.errors import InputError
+from simplexcub.measures import Measure
 from simplexcub.rule import Rule
 from simplexcub.search import solve
-from simplexcub.table import format_of, render, save
+from simplexcub.symmetry import NAMES
+from simplexcub.table import efficiency, format_of, render, save
 from simplexcub.verify import verify
 
 EXAMPLE = "simplexcub solve hilbert-schmidt -N 3 -t 7 -o hs.json"
@@ -27,14 +31,29 @@ def add_options(parser: argparse.ArgumentParser) -> None:
         "--space", choices=("all",), default="all", help="polynomials to be exact for: all of degree ≤ T (default)"
     )
     parser.add_argument(
-        "--symmetry", choices=("full", "none"), default="full", help="symmetry of the node set (default full)"
+        "--symmetry",
+        default="full",
+        metavar="NAME",
+        help=f"symmetry of the node set: one of {', '.join(NAMES)}, or best, which tries several and keeps the"
+        " fewest nodes (default full)",
     )
     parser.add_argument("--digits", type=whole, default=50, metavar="D", help="significant digits (default 50)")
     parser.add_argument(
         "--budget", type=duration, default=60.0, metavar="TIME", help="time for the search: 90s, 2m, 1h (default 60s)"
     )
     parser.add_argument("--seed", type=whole, default=0, metavar="S", help="seed of the random starts (default 0)")
-    parser.add_argument("--jobs", type=whole, default=1, metavar="J", help="processes to search with (default 1)")
+    parser.add_argument(
+        "--jobs",
+        type=whole,
+        metavar="J",
+        help="processes to search with (default 1); with --cluster, tasks at a time (default: its threads)",
+    )
+    parser.add_argument(
+        "--resume", type=Path, metavar="DIR", help="folder that remembers finished work; a stopped search goes on there"
+    )
+    parser.add_argument(
+        "--cluster", metavar="ADDRESS", help="search on the dask.distributed cluster with this scheduler: tcp://…"
+    )
     parser.add_argument(
         "-o", "--output", type=Path, metavar="FILE", help="save here, in the format of the ending, and print a summary"
     )
@@ -47,21 +66,10 @@ def run(args: argparse.Namespace) -> int:
         format_of(args.output)
         require_writable(args.output)
     with InterruptNoted() as interrupted, ProgressLine() as show:
-        rule = solve(
-            measure,
-            args.degree,
-            space=args.space,
-            symmetry=args.symmetry,
-            digits=args.digits,
-            seed=args.seed,
-            budget=args.budget,
-            jobs=args.jobs,
-            progress=show,
-        )
+        rule = _solved(args, measure, show)
         report = verify(rule, progress=show)
     rule = rule.verified(report.verification)
-    wanted_orbits = measure.is_symmetric and args.symmetry == "full"
-    if rule.provenance.method == "conical product" and wanted_orbits:
+    if rule.provenance.method == "conical product":
         complain(
             f"no smaller rule was found in time; this is the conical product rule of {len(rule)} nodes."
             " A longer --budget or another --seed may find fewer"
@@ -74,6 +82,27 @@ def run(args: argparse.Namespace) -> int:
         complain("interrupted; the best rule so far was kept")
         return 130
     return 0
+
+
+def _solved(args: argparse.Namespace, measure: Measure, show: ProgressLine) -> Rule:
+    """The rule, searched for here or on a cluster."""
+    with ExitStack() as stack:
+        executor, jobs = None, 1
+        if args.cluster is not None:
+            executor, jobs = stack.enter_context(cluster_executor(args.cluster))
+        return solve(
+            measure,
+            args.degree,
+            space=args.space,
+            symmetry=args.symmetry,
+            digits=args.digits,
+            seed=args.seed,
+            budget=args.budget,
+            jobs=jobs if args.jobs is None else args.jobs,
+            executor=executor,
+            resume=args.resume,
+            progress=show,
+        )
 
 
 def _deliver(rule: Rule, output: Path | None) -> None:
@@ -91,5 +120,8 @@ def _deliver(rule: Rule, output: Path | None) -> None:
 
 def _summary(rule: Rule) -> str:
     check = rule.verification
-    found = f", at least {check.lower_bound} needed, residual {check.max_residual}" if check else ""
+    found = ""
+    if check:
+        share = efficiency(check.lower_bound, len(rule))
+        found = f", at least {check.lower_bound} needed (efficiency {share}), residual {check.max_residual}"
     return f"{rule.measure}, {rule.space}, degree {rule.degree}: {len(rule)} nodes, {rule.digits} digits{found}"

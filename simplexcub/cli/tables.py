@@ -7,10 +7,12 @@ import argparse
 from simplexcub.cli.options import whole
 from simplexcub.errors import NothingFound
 from simplexcub.measures import FAMILIES
-from simplexcub.table import Shipped, catalogue
+from simplexcub.table import Shipped, catalogue, efficiency, published
 
 EXAMPLE = "simplexcub tables hilbert-schmidt -N 3"
-_HEAD = ("measure", "space", "degree", "nodes", "bound", "digits")
+_HEAD = ("measure", "space", "degree", "nodes", "bound", "efficiency", "published", "symmetry", "digits")
+_NUMBERS = _HEAD[2:7]
+_GAP = "  "
 
 
 def add_options(parser: argparse.ArgumentParser) -> None:
@@ -20,15 +22,16 @@ def add_options(parser: argparse.ArgumentParser) -> None:
 
 
 def run(args: argparse.Namespace) -> int:
-    """List measure, space, degree, nodes and the least number of nodes that any rule of the degree has."""
+    """List the rules beside the least number of nodes that any rule of the degree has, and the fewest published."""
     found = catalogue(args.measure, N=args.N)
     if not found:
         wanted = " ".join([args.measure or "", "" if args.N is None else f"N = {args.N}"]).strip()
         raise NothingFound("shipped table", f"none for {wanted}", "See 'simplexcub tables' for all, or solve for one.")
     rows = [_HEAD, *(_row(item) for item in found)]
-    measures, spaces = max(len(row[0]) for row in rows), max(len(row[1]) for row in rows)
-    for measure, space, *numbers in rows:
-        print(f"{measure:<{measures}}  {space:<{spaces}}" + "".join(f"{number:>8}" for number in numbers))
+    widths = [max(len(row[k]) for row in rows) for k in range(len(_HEAD))]
+    for row in rows:
+        cells = zip(_HEAD, row, widths, strict=True)
+        print(_GAP.join(cell.rjust(w) if name in _NUMBERS else cell.ljust(w) for name, cell, w in cells).rstrip())
     return 0
 
 
@@ -38,5 +41,15 @@ def _row(item: Shipped) -> tuple[str, ...]:
         for name, value in item.measure.items()
         if name != "family" and not (item.family == "hilbert-schmidt" and name == "K")
     )
-    numbers = (item.degree, item.nodes, item.bound, item.digits)
-    return (f"{item.family}, {parameters}", item.space, *map(str, numbers))
+    mark = published(item.family, item.N, item.degree, item.symmetry) if item.space == "all" else None
+    return (
+        f"{item.family}, {parameters}",
+        item.space,
+        str(item.degree),
+        str(item.nodes),
+        str(item.bound),
+        efficiency(item.bound, item.nodes),
+        "–" if mark is None else f"{mark.nodes} {mark.symmetry}",
+        item.symmetry,
+        str(item.digits),
+    )

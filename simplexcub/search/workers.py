@@ -7,11 +7,15 @@ it. With a folder, every finished task is written there at once and never comput
 from __future__ import annotations
 
 import os
+import signal
+import sys
 from collections import deque
 from collections.abc import Callable, Iterable, Iterator
-from concurrent.futures import BrokenExecutor, Executor, Future, ProcessPoolExecutor
-from contextlib import contextmanager
+from concurrent.futures import BrokenExecutor, CancelledError, Executor, Future, ProcessPoolExecutor
+from contextlib import contextmanager, suppress
 from multiprocessing import get_context
+from multiprocessing.connection import Connection
+from threading import Thread
 from typing import Any, TypeVar
 
 from simplexcub.search.record import Record
@@ -111,12 +115,50 @@ class Workers:
                 future = self._submit(task)
                 for i, (other, _) in enumerate(waiting):
                     waiting[i] = (other, self._submit(other))
+            except Exception as error:
+                if not _is_loss(error):
+                    raise
+                future = self._submit(task)
         return run_task(task)
 
     def _mend(self) -> None:
         self.close()
         # An executor that is not ours cannot be made anew: what it loses is run here.
         self._executor = self._make() if self._make is not None and self._owned else None
+
+
+def _is_loss(error: Exception) -> bool:
+    """Whether a future ended so because its worker or the way there was lost, through no fault of its task."""
+    distributed = sys.modules.get("distributed")  # loaded where the executor is one of its own
+    losses = (CancelledError, OSError, *(() if distributed is None else (distributed.KilledWorker,)))
+    return isinstance(error, losses)
+
+
+class _Processes(ProcessPoolExecutor):
+    """Processes that end with this one, however it ends, and at once when they are told to."""
+
+    def __init__(self, count: int) -> None:
+        context = get_context("spawn")
+        # No worker holds the other end: it closes when this process closes it, or is killed.
+        listener, self._lifeline = context.Pipe(duplex=False)
+        super().__init__(count, mp_context=context, initializer=_live, initargs=(listener,))
+
+    def shutdown(self, wait: bool = True, *, cancel_futures: bool = False) -> None:
+        if cancel_futures:
+            self._lifeline.close()
+        super().shutdown(wait, cancel_futures=cancel_futures)
+
+
+def _live(lifeline: Connection) -> None:
+    """Prepare a worker: it leaves Ctrl-C to the process that waits for it, and ends when the line is cut."""
+    signal.signal(signal.SIGINT, signal.SIG_IGN)
+
+    def watch() -> None:
+        with suppress(OSError, EOFError):
+            lifeline.recv_bytes()
+        os._exit(0)
+
+    Thread(target=watch, daemon=True).start()
 
 
 @contextmanager
@@ -127,7 +169,7 @@ def local_workers(jobs: int, record: Record | None = None) -> Iterator[Workers]:
         return
     before = {name: os.environ.get(name) for name in _THREADS}
     os.environ.update(dict.fromkeys(_THREADS, "1"))  # inherited by the workers; this process has read its own already
-    workers = Workers(lambda: ProcessPoolExecutor(jobs, mp_context=get_context("spawn")), jobs, record)
+    workers = Workers(lambda: _Processes(jobs), jobs, record)
     try:
         yield workers
     finally:

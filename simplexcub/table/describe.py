@@ -123,7 +123,7 @@ def facts(rule: Rule) -> list[Fact]:
         _fact("symmetry", rule.symmetry),
         _fact("weights", _weights(rule)),
         _fact("digits", str(rule.digits)),
-        *_checks(rule.verification),
+        *_checks(rule.verification, len(rule)),
         _fact("made by", " ".join(made_by.split())),
         _fact("method", " ".join(source.method.split()) or "not stated"),
     ]
@@ -164,7 +164,12 @@ def _weights(rule: Rule) -> str:
     return f"{signs}, all equal" if rule.equal_weights else signs
 
 
-def _checks(found: Verification | None) -> list[Fact]:
+def efficiency(bound: int, nodes: int) -> str:
+    """Least number of nodes that any rule of the degree has, as a share of those that this one has."""
+    return f"{bound / nodes:.2f}"
+
+
+def _checks(found: Verification | None, nodes: int) -> list[Fact]:
     if found is None:
         return []
     worst = monomial(found.worst_exponents)
@@ -181,6 +186,7 @@ def _checks(found: Verification | None) -> list[Fact]:
         _fact("first failure", f"at degree {found.fails_at_degree}"),
         _fact("inside", "all nodes lie on the simplex" if found.inside else "not all nodes lie on the simplex"),
         _fact("lower bound", f"no rule of this degree has fewer than {counted(found.lower_bound, 'node')}"),
+        _fact("efficiency", f"{efficiency(found.lower_bound, nodes)} = {found.lower_bound}/{nodes}, bound / nodes"),
     ]
     if found.proof is not None:
         checks.append(_proof(found.proof))

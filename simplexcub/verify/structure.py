@@ -6,22 +6,15 @@ Each check takes exact integers and gives sentences, one for each thing that is 
 from __future__ import annotations
 
 from collections import Counter
-from collections.abc import Callable, Iterator
+from collections.abc import Iterator
 from fractions import Fraction
 
 from simplexcub.errors import InputError
+from simplexcub.measures import Dirichlet
 from simplexcub.rule import Orbit, Rule
-from simplexcub.symmetry import distinct_permutations, orbit_size
+from simplexcub.symmetry import Group, distinct_permutations, named_group, orbit_size
 from simplexcub.verify.printed import Printed, parse_decimal
 from simplexcub.verify.residuals import short
-
-Node = tuple[int, ...]
-
-# Generators of each group that a rule can claim, acting on the coordinates of a node.
-_GENERATORS: dict[str, tuple[Callable[[Node], Node], ...]] = {
-    "none": (),
-    "full": (lambda x: (x[1], x[0], *x[2:]), lambda x: (*x[1:], x[0])),
-}
 
 
 def is_positive(printed: Printed) -> bool:
@@ -29,13 +22,12 @@ def is_positive(printed: Printed) -> bool:
     return all(w > 0 for w in printed.weights)
 
 
-def is_invariant(printed: Printed, group: str = "full") -> bool:
-    """Whether the printed nodes, with their weights, are the same set after every permutation in `group`."""
-    listed = Counter(zip(printed.nodes, printed.weights, strict=True))
-    return all(
-        Counter((move(x), w) for x, w in zip(printed.nodes, printed.weights, strict=True)) == listed
-        for move in _GENERATORS[group]
-    )
+def is_invariant(printed: Printed, group: Group | None = None) -> bool:
+    """Whether the printed nodes, with their weights, are the same set after every permutation in `group` (S_N)."""
+    generators = (group or named_group("full", len(printed.nodes[0]))).generators
+    weighted = list(zip(printed.nodes, printed.weights, strict=True))
+    listed = Counter(weighted)
+    return all(Counter((tuple(x[i] for i in g), w) for x, w in weighted) == listed for g in generators)
 
 
 def weight_faults(printed: Printed, *, equal: bool) -> Iterator[str]:
@@ -74,12 +66,21 @@ def claim_faults(rule: Rule, printed: Printed) -> Iterator[str]:
             if list(node) != sorted(node, reverse=True):
                 yield f"node {k} stands for its orbit, but its coordinates are not in descending order"
                 break
-    elif rule.symmetry not in _GENERATORS:
-        yield f"symmetry {rule.symmetry} is claimed; only {' and '.join(sorted(_GENERATORS))} can be checked"
-    elif not is_invariant(printed, rule.symmetry):
-        yield f"symmetry {rule.symmetry} is claimed, but the printed nodes and weights are not invariant under it"
+    else:
+        yield from _symmetry_faults(rule, printed)
     if rule.orbits:
         yield from _orbit_faults(rule, printed)
+
+
+def _symmetry_faults(rule: Rule, printed: Printed) -> Iterator[str]:
+    alpha = rule.measure.alpha if isinstance(rule.measure, Dirichlet) else ()
+    try:
+        group = named_group(rule.symmetry, rule.measure.N, alpha)
+    except InputError as error:
+        yield f"symmetry {rule.symmetry} is claimed, which cannot be checked: {error}"
+        return
+    if not is_invariant(printed, group):
+        yield f"symmetry {rule.symmetry} is claimed, but the printed nodes and weights are not invariant under it"
 
 
 def _near_one(excess: Fraction) -> str:
