@@ -9,6 +9,8 @@ from dataclasses import replace
 from pathlib import Path
 from typing import Literal
 
+from mpmath import mp
+
 import simplexcub
 from simplexcub.errors import InputError
 from simplexcub.measures import Dirichlet, Measure
@@ -156,10 +158,11 @@ def _rule(found: Found, digits: int, provenance: Provenance) -> Rule:
         orbits = [(t.multiplicities, values, weight) for t, values, weight in found.orbits]
         return rule_from_orbits(problem.measure, problem.degree, orbits, digits=digits, provenance=provenance)
     nodes, weights = [], []
-    for type_, values, weight in found.orbits:
-        for pattern in problem.group.arrangements(type_):
-            nodes.append([values[label] for label in pattern])
-            weights.append(weight / type_.size)
+    with mp.workdps(digits + 10):
+        for type_, values, weight in found.orbits:
+            for pattern in problem.group.arrangements(type_):
+                nodes.append([values[label] for label in pattern])
+                weights.append(weight / type_.size)
     return rule_from_nodes(
         problem.measure,
         problem.degree,

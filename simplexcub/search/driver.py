@@ -11,6 +11,7 @@ from __future__ import annotations
 import time
 from collections.abc import Callable, Sequence
 from dataclasses import dataclass
+from itertools import takewhile
 
 from simplexcub.search.counts import Counts, fewest_nodes, node_count, possible_counts
 from simplexcub.search.eliminate import Walk
@@ -133,9 +134,11 @@ class Search:
     def _start(self, numbers: Sequence[int], most_structures: int) -> None:
         """Random starts for the structures below the best, from the fewest nodes upward until one is solved."""
         for nodes in range(fewest_nodes(self.problem.group, self.problem.degree), self._most() + 1):
+            if self.budget.spent:
+                return
             structures = possible_counts(self.problem.group, self.problem.degree, nodes)[:most_structures]
             tasks = (Chunk(self.problem, counts, self.seed, number) for counts in structures for number in numbers)
-            for task, solutions in self.workers.in_order(tasks):
+            for task, solutions in self.workers.in_order(takewhile(lambda _: not self.budget.spent, tasks)):
                 self._report(f"starts for {describe(task.counts)}")
                 if self._take(task.counts, solutions) or self.budget.spent:
                     return
