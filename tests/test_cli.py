@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 import json
+from dataclasses import replace
 from decimal import Decimal
 from fractions import Fraction
 from pathlib import Path
@@ -12,6 +13,7 @@ import pytest
 from conftest import Call
 
 from simplexcub.cli import COMMANDS
+from simplexcub.cli.output import HasText, ProgressLine
 from simplexcub.measures import Measure, hilbert_schmidt, induced
 from simplexcub.rule import Rule
 from simplexcub.search import solve
@@ -81,7 +83,7 @@ def test_solve_saves_and_sums_up_in_one_line(call: Call, tmp_path: Path) -> None
     for part in (str(hilbert_schmidt(3)), "all", "degree 4", f"{len(rule)} nodes", "50 digits", "residual", str(path)):
         assert part in line
     assert rule.verification is not None
-    assert f"at least {rule.verification.lower_bound} needed" in line
+    assert f"at least {rule.verification.lower_bound} needed (efficiency 1.00)" in line
     assert rule.verification.max_residual in line
 
 
@@ -89,8 +91,7 @@ def test_solve_saves_and_sums_up_in_one_line(call: Call, tmp_path: Path) -> None
     ("options", "field", "value"),
     [
         (("--digits", "20"), "digits", 20),
-        (("--symmetry", "none"), "symmetry", "none"),
-        (("--symmetry", "full"), "symmetry", "full"),
+        *((("--symmetry", name), "symmetry", name) for name in ("full", "none", "cyclic", "stabiliser", "product-1-2")),
         (("--space", "all"), "space", "all"),
         (("--degree", "3"), "degree", 3),
     ],
@@ -126,12 +127,49 @@ def test_solve_with_an_ended_budget_offers_the_product_rule_and_says_so(call: Ca
 
 
 @pytest.mark.parametrize("arguments", [("flat", "-N", "3", "--symmetry", "none"), ("dirichlet", "--alpha", "1,2,3")])
-def test_solve_does_not_apologise_for_a_product_rule_that_was_asked_for(
-    call: Call, arguments: tuple[str, ...]
-) -> None:
-    status, out, err = call("solve", *arguments, "-t", 3, "--digits", 20)
-    assert (status, err) == (0, [])
+def test_solve_apologises_for_a_product_rule_under_every_symmetry(call: Call, arguments: tuple[str, ...]) -> None:
+    status, out, err = call("solve", *arguments, "-t", 9, "--digits", 20, "--budget", "0.000001s")
+    assert (status, len(err)) == (0, 1)
+    assert "conical product" in err[0]
     assert value_of(out, "method") == "conical product"
+
+
+@pytest.mark.parametrize(
+    ("arguments", "nodes", "of"),
+    [
+        # Jaśkowiec & Sukumar, Int. J. Numer. Methods Eng. 121 (2020) 2418, from memory.
+        ("flat -N 4 -t 4 --symmetry none", 11, 10),
+        # K. Gatermann, Computing 40 (1988) 229, from memory; also Möller's bound.
+        ("flat -N 3 -t 7 --symmetry best", 12, 12),
+    ],
+)
+def test_solve_reaches_published_counts_without_full_symmetry(
+    call: Call, monkeypatch: pytest.MonkeyPatch, arguments: str, nodes: int, of: int
+) -> None:
+    class Content(ProgressLine):
+        """Interrupts the search, which would try for fewer nodes for a while, once the mark is reached."""
+
+        def __call__(self, progress: HasText) -> None:
+            if progress.text.startswith(f"best so far {nodes} nodes"):
+                raise KeyboardInterrupt
+
+    monkeypatch.setattr("simplexcub.cli.solve.ProgressLine", Content)
+    status, out, err = call("solve", *arguments.split(), "--budget", "10m")
+    assert (status, err) == (0, [])
+    assert value_of(out, "status") == "verified"
+    assert value_of(out, "nodes") == str(nodes)
+    assert value_of(out, "efficiency") == f"{of / nodes:.2f} = {of}/{nodes}, bound / nodes"
+
+
+def test_solve_resumes_from_a_folder(call: Call, tmp_path: Path) -> None:
+    command = ("solve", "flat", "-N", 3, "-t", 4, "--digits", 20, "--resume", tmp_path / "search")
+    status, first, err = call(*command)
+    assert (status, err) == (0, [])
+    files = sorted((tmp_path / "search").iterdir())
+    before = [path.stat().st_mtime_ns for path in files]
+    assert call(*command) == (0, first, [])
+    assert sorted((tmp_path / "search").iterdir()) == files
+    assert [path.stat().st_mtime_ns for path in files] == before
 
 
 def test_verify_confirms_what_solve_saved(call: Call, table: Path) -> None:
@@ -233,14 +271,37 @@ def test_tables_lists_all_that_is_shipped(call: Call) -> None:
     status, out, err = call("tables")
     assert (status, err) == (0, [])
     assert len(out) == 1 + len(catalogue()) > 80
-    assert out[0].split() == ["measure", "space", "degree", "nodes", "bound", "digits"]
+    assert " ".join(out[0].split()) == "measure space degree nodes bound efficiency published symmetry digits"
 
 
 def test_tables_can_be_narrowed_in_any_order(call: Call) -> None:
     _, out, _ = call("tables", *HS3)
     assert call("tables", "-N", 3, "hilbert-schmidt") == (0, out, [])
-    assert [int(line.split()[-4]) for line in out[1:]] == list(range(1, 15))
+    degrees = [int(line.split()[5]) for line in out[1:]]
+    assert degrees == sorted(degrees)
+    assert set(degrees) >= set(range(1, 15))
     assert all(line.startswith("hilbert-schmidt, N = 3 ") for line in out[1:])
+
+
+def test_tables_show_efficiency_and_the_published_mark(call: Call) -> None:
+    _, out, _ = call("tables", "flat", "-N", 4)
+    rows = {tuple(line.split()[5:]) for line in out[1:]}
+    # Witherden & Vincent, Comput. Math. Appl. 69 (2015) 1232, from memory.
+    assert ("4", "14", "10", "0.71", "14", "full", "full", "50") in rows
+    _, out, _ = call("tables", *HS3)
+    assert {line.split()[-3] for line in out[1:]} == {"–"}
+
+
+def test_marks_without_symmetry_are_shown_beside_rules_without_it(call: Call, monkeypatch: pytest.MonkeyPatch) -> None:
+    lines = [
+        replace(item, symmetry="product-2-2", nodes=11)
+        for item in catalogue("flat", N=4)
+        if (item.degree, item.symmetry) == (4, "full")
+    ]
+    monkeypatch.setattr("simplexcub.cli.tables.catalogue", lambda *_, **__: lines)
+    # Jaśkowiec & Sukumar, Int. J. Numer. Methods Eng. 121 (2020) 2418, from memory.
+    (_, line) = call("tables")[1]
+    assert line.split()[5:] == ["4", "11", "10", "0.91", "11", "any", "product-2-2", "50"]
 
 
 def test_tables_status_is_one_where_nothing_is_shipped(call: Call) -> None:
@@ -269,6 +330,26 @@ def test_jobs_reach_the_search(call: Call, monkeypatch: pytest.MonkeyPatch) -> N
     seen = spy_on_search(monkeypatch)
     assert call("solve", "flat", "-N", 2, "-t", 1, "--jobs", 3)[0] == 0
     assert [options["jobs"] for options in seen] == [3]
+
+
+@pytest.mark.parametrize(
+    ("arguments", "name", "value"),
+    [
+        (("--symmetry", "best"), "symmetry", "best"),
+        (("--resume", "folder"), "resume", Path("folder")),
+        ((), "resume", None),
+        ((), "symmetry", "full"),
+        ((), "jobs", 1),
+        ((), "executor", None),
+        ((), "budget", 60.0),
+    ],
+)
+def test_options_reach_the_search(
+    call: Call, monkeypatch: pytest.MonkeyPatch, arguments: tuple[str, ...], name: str, value: object
+) -> None:
+    seen = spy_on_search(monkeypatch)
+    assert call("solve", "flat", "-N", 2, "-t", 1, *arguments)[0] == 0
+    assert [options[name] for options in seen] == [value]
 
 
 def spy_on_search(monkeypatch: pytest.MonkeyPatch) -> list[dict[str, Any]]:

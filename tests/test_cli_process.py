@@ -90,7 +90,7 @@ def test_an_interrupt_before_anything_was_found_is_one_line() -> None:
     program = (
         "import signal, sys; signal.signal(signal.SIGINT, signal.default_int_handler); import simplexcub.cli.solve; "
         "print('ready', flush=True); "
-        "sys.exit(simplexcub.cli.main('solve flat -N 4 -t 13 --budget 1h'.split()))"
+        "sys.exit(simplexcub.cli.main('solve flat -N 4 -t 25 --symmetry none --budget 1h'.split()))"
     )
     with subprocess.Popen(
         [sys.executable, "-c", program],
