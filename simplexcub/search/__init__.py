@@ -20,7 +20,7 @@ from simplexcub.search.driver import Budget, Found, Progress, Search
 from simplexcub.search.gauss import gauss_rule
 from simplexcub.search.record import Record
 from simplexcub.search.system import Problem
-from simplexcub.search.workers import Workers, local_workers
+from simplexcub.search.workers import Overdue, Workers, local_workers
 from simplexcub.symmetry import Group, named_group
 
 __all__ = ["Progress", "solve"]
@@ -142,12 +142,15 @@ def _search(
             most_nodes=most,
             progress=progress,
         )
+        workers.deadline = share.start + share.seconds
         try:
             search.run()
         except KeyboardInterrupt:
             if search.best is None and best is None:
                 raise
             return search.best or best
+        except Overdue:
+            pass  # what was found before counts
         best = search.best or best
     return best
 

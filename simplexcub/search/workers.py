@@ -6,12 +6,14 @@ it. With a folder, every finished task is written there at once and never comput
 
 from __future__ import annotations
 
+import math
 import os
 import signal
 import sys
+import time
 from collections import deque
 from collections.abc import Callable, Iterable, Iterator
-from concurrent.futures import BrokenExecutor, CancelledError, Executor, Future, ProcessPoolExecutor
+from concurrent.futures import BrokenExecutor, CancelledError, Executor, Future, ProcessPoolExecutor, wait
 from contextlib import contextmanager, suppress
 from multiprocessing import get_context
 from multiprocessing.connection import Connection
@@ -28,8 +30,18 @@ _RETRIES = 3
 _THREADS = ("OMP_NUM_THREADS", "OPENBLAS_NUM_THREADS", "MKL_NUM_THREADS")
 
 
+class Overdue(Exception):
+    """The time was up while the result of a task was waited for."""
+
+
 class Workers:
     """Runs tasks and gives their results in the order asked.
+
+    Attributes
+    ----------
+    deadline : float
+        By ``time.monotonic()``; no result of an executor is waited for beyond it. A cluster whose last worker is gone
+        would else be waited for without end.
 
     Parameters
     ----------
@@ -56,6 +68,7 @@ class Workers:
         self._count = count
         self._record = record
         self._executor = make() if make is not None else None
+        self.deadline = math.inf
 
     def close(self) -> None:
         """Let go of the executor; tasks still running are not waited for."""
@@ -63,12 +76,18 @@ class Workers:
             self._executor.shutdown(wait=False, cancel_futures=True)
 
     def run_all(self, tasks: Iterable[Task]) -> Iterator[Any]:
-        """Results of all tasks, in order."""
+        """Results of all tasks, in order; raises `Overdue` as `in_order` does."""
         for _, result in self.in_order(tasks):
             yield result
 
     def in_order(self, tasks: Iterable[Task]) -> Iterator[tuple[Task, Any]]:
-        """(task, result) in the order of the tasks; a few run ahead."""
+        """(task, result) in the order of the tasks; a few run ahead.
+
+        Raises
+        ------
+        Overdue
+            The deadline came first.
+        """
         source = iter(tasks)
         waiting: deque[tuple[Task, Future[Any] | None]] = deque()
         try:
@@ -108,6 +127,11 @@ class Workers:
         for _ in range(_RETRIES):
             if future is None:
                 break
+            left = self.deadline - time.monotonic()
+            wait([future], timeout=max(left, 0.0) if math.isfinite(left) else None)
+            if not future.done():
+                self._drop(future)
+                raise Overdue
             try:
                 return future.result()
             except BrokenExecutor:
@@ -120,6 +144,11 @@ class Workers:
                     raise
                 future = self._submit(task)
         return run_task(task)
+
+    def _drop(self, future: Future[Any]) -> None:
+        """Let go of a task that may be running; in processes of our own it would be in the way of the next search."""
+        if not future.cancel() and self._owned:
+            self._mend()
 
     def _mend(self) -> None:
         self.close()
