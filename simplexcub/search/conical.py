@@ -49,7 +49,6 @@ def conical_rule(measure: Measure, degree: int, *, digits: int, provenance: Prov
     axes = [beta_gauss(alpha[i], sum(alpha[i + 1 :]), per_axis, digits) for i in range(n - 1)]
     nodes, weights = [], []
     with mp.workdps(digits + 15):
-        negligible = mpf(10) ** (-digits - 5)
         for picks in product(range(per_axis), repeat=n - 1):
             left, weight, node = mpf(1), mpf(1), []
             for (x, w), pick in zip(axes, picks, strict=True):
@@ -59,9 +58,10 @@ def conical_rule(measure: Measure, degree: int, *, digits: int, provenance: Prov
             node.append(left)
             for a, b in combinations(node, 2) if vandermonde else ():
                 weight *= (a - b) ** 2
-            if weight > negligible:
-                nodes.append(node)
-                weights.append(weight)
+            nodes.append(node)
+            weights.append(weight)
         total = mp.fsum(weights)
-        weights = [w / total for w in weights]
+        negligible = mpf(10) ** (-digits - 5)  # where two coordinates agree the density vanishes
+        kept = [(node, w / total) for node, w in zip(nodes, weights, strict=True) if w > negligible * total]
+        nodes, weights = [node for node, _ in kept], [w for _, w in kept]
     return rule_from_nodes(measure, degree, nodes, weights, digits=digits, provenance=provenance)

@@ -1,8 +1,8 @@
 """The search for the rule with the fewest nodes: the order of work, and when to stop.
 
-First a few elimination walks come down from rules with many nodes; then random starts try the structures with fewer
+First some elimination walks come down from rules with many nodes; then random starts try the structures with fewer
 nodes than the best rule, from the fewest nodes upward. That repeats with more walks, more structures and more starts,
-until the rounds or the budget end. Tasks may run anywhere, but their results are taken in the order of the plan, so that the same seed
+until enough walks have ended at the same number of nodes, or the rounds or the budget end. Tasks may run anywhere, but their results are taken in the order of the plan, so that the same seed
 gives the same rule however many workers there are.
 """
 
@@ -20,9 +20,11 @@ from simplexcub.search.system import FloatArray, Problem, System
 from simplexcub.search.tasks import Chunk, Leg, describe
 from simplexcub.search.workers import Workers
 
-WALKS = (2, 2, 4)  # elimination walks begun in each round
-CHUNKS = (1, 4, 15)  # chunks of starts that every structure gets in each round
-STRUCTURES = (12, 40, 2000)  # structures of one node count that are tried in each round
+WALKS = (4, 12, 48)  # elimination walks begun in each round
+CHUNKS = (1, 2, 8)  # chunks of starts that every structure gets in each round
+STRUCTURES = (6, 20, 2000)  # structures of one node count that are tried in each round
+AGREE = (4, 6, 10**9)  # walks that must have ended at the best count for a round to be the last
+ABREAST = 4  # walks that go on side by side
 
 
 @dataclass(frozen=True)
@@ -97,17 +99,19 @@ class Search:
         self.most_nodes = most_nodes
         self.progress = progress
         self.best: Found | None = None
-        self._began = 0
+        self._agreed = 0
         self._ended = 0
 
     def run(self) -> None:
         """Search until the rounds or the budget end."""
         walks, chunks = 0, 0
-        for more_walks, more_chunks, structures in zip(WALKS, CHUNKS, STRUCTURES, strict=True):
-            self._walk(range(walks, walks + more_walks))
+        for more_walks, more_chunks, structures, agree in zip(WALKS, CHUNKS, STRUCTURES, AGREE, strict=True):
+            for first in range(walks, walks + more_walks, ABREAST):
+                self._walk(range(first, first + ABREAST))
             self._start(range(chunks, chunks + more_chunks), structures)
             walks, chunks = walks + more_walks, chunks + more_chunks
-            if self.budget.spent or self._most() < fewest_nodes(self.problem.group, self.problem.degree):
+            least = fewest_nodes(self.problem.group, self.problem.degree)
+            if self.budget.spent or self._agreed >= agree or self._most() < least:
                 return
 
     def _most(self) -> int:
@@ -129,6 +133,7 @@ class Search:
                     walks[number] = walk
                 if walk.counts and (walk.ended or walk.at_once == 1) and node_count(walk.counts) <= self._most():
                     self._take(walk.counts, walk.pool)
+                self._agreed += walk.ended and self.best is not None and node_count(walk.counts) == self.best.nodes
             leg += 1
 
     def _start(self, numbers: Sequence[int], most_structures: int) -> None:
@@ -150,6 +155,7 @@ class Search:
             orbits = refine(system, u, self.digits)
             if orbits is not None:
                 self.best = Found(self.problem, counts, u, orbits)
+                self._agreed = 0
                 return True
         return False
 

@@ -9,41 +9,45 @@ exists by V. Tchakaloff, Bull. Sci. Math. 81 (1957) 123, and is found by non-neg
 
 from __future__ import annotations
 
+from collections.abc import Iterator
 from dataclasses import dataclass, replace
+from functools import lru_cache
 
 import numpy as np
 from scipy.optimize import nnls
 
 from simplexcub.search.counts import Counts, allowed, conditions, node_count, random_values
 from simplexcub.search.levenberg import solve_batch
-from simplexcub.search.system import FloatArray, Problem, System
+from simplexcub.search.system import FloatArray, Parts, Problem, System
+from simplexcub.symmetry import Group, OrbitType
 
 _POOL = 6  # solutions kept at each level
 _SHAKES = 4  # times a level is shaken before the walk gives up
 _BATCH = 8  # candidates tried at once, those with the least to lose first
 _ITERATIONS = 50
+_RICHNESS = (5, 20, 80)  # candidates per equation and orbit type offered to the start, more where fewer do not do
+_SOLVED, _NO_WEIGHT = 1e-8, 1e-14
 
 
 def tchakaloff_start(problem: Problem, rng: np.random.Generator) -> tuple[Counts, FloatArray] | None:
     """A positive rule with at most as many orbits as equations, picked from many random orbits of every type."""
-    basis = problem.basis
-    types = problem.group.types
-    per_type = [20 * len(basis) if t is types[-1] else (4 * len(basis) if t.unknowns > 1 else 1) for t in types]
-    values = [random_values(t, rng.dirichlet(np.ones(problem.group.n), m)) for t, m in zip(types, per_type, strict=True)]
-    columns = np.concatenate([basis.jet(v, t)[:, 0] for v, t in zip(values, types, strict=True)]).T
-    means = System(problem, ()).means
-    weights, residual = nnls(columns, means, maxiter=20 * columns.shape[1])
-    if residual > 1e-8:
-        return None
-    counts, w, x, start = [], [], [], 0
-    for t, v in zip(types, values, strict=True):
-        here = np.flatnonzero(weights[start : start + len(v)] > 1e-14)
-        if len(here):
-            counts.append((t, len(here)))
-            w.append(weights[start + here])
-            x.append(v[here, :-1].ravel())
-        start += len(v)
-    return tuple(counts), np.concatenate([*w, *x])
+    system = System(problem, ())
+    basis, group = problem.basis, problem.group
+    for richness in _RICHNESS:
+        parts: Parts = {}
+        points = {t: richness * len(basis) if t.unknowns > 1 else 1 for t in group.types}
+        values = {t: random_values(t, rng.dirichlet(np.ones(group.n), m)) for t, m in points.items()}
+        columns = np.concatenate([basis.jet(v, t)[:, 0] for t, v in values.items()]).T
+        weights, residual = nnls(columns, system.means, maxiter=20 * columns.shape[1])
+        if residual > _SOLVED:
+            continue
+        start = 0
+        for t, v in values.items():
+            here = weights[start : start + len(v)]
+            parts[t] = [(w, x) for w, x in zip(here, v, strict=True) if w > _NO_WEIGHT]
+            start += len(v)
+        return system.join(parts)
+    return None
 
 
 @dataclass(frozen=True)
@@ -71,7 +75,7 @@ class Walk:
     ended: bool
 
 
-def set_out(problem: Problem, number: int, rng: np.random.Generator) -> Walk:
+def set_out(problem: Problem, rng: np.random.Generator) -> Walk:
     """The start of a walk, by non-negative least squares."""
     start = tchakaloff_start(problem, rng)
     if start is None:
@@ -95,18 +99,22 @@ def advance(problem: Problem, walk: Walk, rng: np.random.Generator) -> Walk:
 
 
 def _drop(problem: Problem, walk: Walk) -> tuple[Counts, FloatArray] | None:
-    """Solutions with `walk.at_once` orbits fewer, or None."""
+    """Solutions with `walk.at_once` orbits fewer, or with one orbit moved to a smaller type; None if there are none."""
     system = System(problem, walk.counts)
     wanted = conditions(problem.group, problem.degree)
     children: dict[Counts, list[tuple[float, FloatArray]]] = {}
     for u in walk.pool:
         significance = _significance(system, u)
         order = np.argsort(significance)
-        sets = [order[: walk.at_once]] if walk.at_once > 1 else [np.array([r]) for r in order]
-        for dropped in sets:
-            smaller, v = _without(system, u, dropped)
+        if walk.at_once > 1:
+            dropped = order[: walk.at_once]
+            options = [(float(significance[dropped].sum()), *_without(system, u, dropped))]
+        else:
+            options = [(float(significance[r]), *_without(system, u, np.array([r]))) for r in order]
+            options += list(_demoted(system, u))
+        for loss, smaller, v in options:
             if smaller and allowed(smaller, wanted):
-                children.setdefault(smaller, []).append((float(significance[dropped].sum()), v))
+                children.setdefault(smaller, []).append((loss, v))
     for smaller in sorted(children, key=node_count):
         candidates = [v for _, v in sorted(children[smaller], key=lambda pair: pair[0])]
         reduced = System(problem, smaller)
@@ -119,6 +127,35 @@ def _drop(problem: Problem, walk: Walk) -> tuple[Counts, FloatArray] | None:
     return None
 
 
+def _demoted(system: System, u: FloatArray) -> Iterator[tuple[float, Counts, FloatArray]]:
+    """Candidates with one orbit moved to the nearest orbit of a type with one coordinate less, and how far it moved."""
+    group = system.problem.group
+    parts = system.split(u)
+    for type_, orbits in parts.items():
+        for special in group.types:
+            if special.unknowns != type_.unknowns - 1:
+                continue
+            for pattern in _merging(group, special, type_):
+                for i, (weight, values) in enumerate(orbits):
+                    node = values[list(type_.pattern)]
+                    merged = np.array([node[np.array(pattern) == j].mean() for j in range(special.unknowns)])
+                    moved = float(np.abs(merged[list(pattern)] - node).sum())
+                    others = {**parts, type_: orbits[:i] + orbits[i + 1 :]}
+                    others[special] = [*others.get(special, []), (weight * special.size / type_.size, merged)]
+                    yield moved, *system.join(others)
+
+
+@lru_cache(maxsize=4096)
+def _merging(group: Group, special: OrbitType, type_: OrbitType) -> list[tuple[int, ...]]:
+    """Arrangements of `special` that have all the equalities of `type_`'s pattern."""
+    labels = type_.pattern
+    return [
+        image
+        for image in group.arrangements(special)
+        if all(image[i] == image[labels.index(label)] for i, label in enumerate(labels))
+    ]
+
+
 def _significance(system: System, u: FloatArray) -> FloatArray:
     """How much each orbit carries: weight · ‖φ(representative)‖², smallest where it is least missed."""
     norms = [np.square(system.basis.jet(system.values(u[None], b)[0], b.type)[:, 0]).sum(axis=1) for b in system.blocks]
@@ -126,19 +163,11 @@ def _significance(system: System, u: FloatArray) -> FloatArray:
 
 
 def _without(system: System, u: FloatArray, dropped: np.ndarray) -> tuple[Counts, FloatArray]:
-    counts, weights, coordinates = [], [], []
-    kept = np.ones(system.orbits, dtype=bool)
-    kept[dropped] = False
-    for block in system.blocks:
-        here = kept[block.weights]
-        if here.any():
-            counts.append((block.type, int(here.sum())))
-            weights.append(u[block.weights][here])
-            coordinates.append(u[block.coordinates].reshape(block.count, block.free)[here].ravel())
-    if not counts:
-        return (), u[:0]
-    w = np.concatenate(weights)
-    return tuple(counts), np.concatenate([w / w.sum(), *coordinates])
+    gone, parts, r = set(int(i) for i in dropped), {}, 0
+    for type_, orbits in system.split(u).items():
+        parts[type_] = [orbit for i, orbit in enumerate(orbits, r) if i not in gone]
+        r += len(orbits)
+    return system.join(parts)
 
 
 def _shake(system: System, pool: FloatArray, rng: np.random.Generator, size: float) -> FloatArray:

@@ -15,7 +15,7 @@ from simplexcub.search.system import System
 
 FloatArray = NDArray[np.float64]
 
-CONVERGED = 1e-13
+CONVERGED = 1e-12
 
 
 def solve_batch(

@@ -49,14 +49,14 @@ class Record:
     def get(self, task: Chunk | Leg) -> FloatArray | Walk:
         """The result of a finished task; a damaged file is computed anew."""
         try:
-            with np.load(self._path(task), allow_pickle=False) as data:
+            with self._path(task).open("rb") as file, np.load(file, allow_pickle=False) as data:
                 pool: FloatArray = data["pool"]
                 if isinstance(task, Chunk):
                     return pool
                 counts = _counts(task.problem.group, data["patterns"], data["numbers"])
                 at_once, shaken, ended = (int(v) for v in data["state"])
                 return Walk(counts, pool, at_once, shaken, bool(ended))
-        except (OSError, ValueError, KeyError, EOFError, zipfile.BadZipFile):
+        except (OSError, ValueError, TypeError, KeyError, EOFError, zipfile.BadZipFile):
             result = task.run()
             self.put(task, result)
             return result

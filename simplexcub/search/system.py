@@ -17,6 +17,7 @@ from simplexcub.search.counts import Counts, random_values
 from simplexcub.symmetry import Group, OrbitType
 
 FloatArray = NDArray[np.float64]
+Parts = dict[OrbitType, list[tuple[float, FloatArray]]]  # orbits of one candidate: weight, distinct coordinates
 
 
 @dataclass(frozen=True)
@@ -123,3 +124,25 @@ class System:
             room = np.minimum(values[..., :-1], values[..., -1:])
             out[:, block.coordinates] = room.reshape(len(u), -1) * self.problem.group.n
         return out
+
+    def split(self, u: FloatArray) -> Parts:
+        """One candidate as {orbit type: [(weight, distinct coordinates), …]}."""
+        parts: Parts = {}
+        for block in self.blocks:
+            parts[block.type] = list(zip(u[block.weights], self.values(u[None], block)[0], strict=True))
+        return parts
+
+    def join(self, parts: Parts) -> tuple[Counts, FloatArray]:
+        """The structure and the unknowns of a candidate given by its orbits; weights are scaled to sum to 1."""
+        kept = [(t, _united(t, parts[t])) for t in self.problem.group.types if parts.get(t)]
+        counts = tuple((t, len(orbits)) for t, orbits in kept)
+        if not kept:
+            return (), np.empty(0)
+        weights = np.array([w for _, orbits in kept for w, _ in orbits])
+        coordinates = [values[:-1] for _, orbits in kept for _, values in orbits]
+        return counts, np.concatenate([weights / weights.sum(), *coordinates])
+
+
+def _united(type_: OrbitType, orbits: list[tuple[float, FloatArray]]) -> list[tuple[float, FloatArray]]:
+    """The orbits themselves, but one in all of a type that is a single point."""
+    return [(sum(w for w, _ in orbits), orbits[0][1])] if type_.unknowns == 1 else orbits

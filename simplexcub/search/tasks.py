@@ -16,6 +16,7 @@ from simplexcub.search.levenberg import solve_batch
 from simplexcub.search.system import FloatArray, Problem, System
 
 _CHUNK_STARTS, _CHUNK_NUMBERS = 200, 4_000_000  # starts per chunk, fewer where their Jacobians hold more numbers
+_LEG_NUMBERS = 40_000  # entries of all square matrices that one leg works through
 _MOST_KEPT = 20  # solutions of a chunk that are passed on
 
 
@@ -43,7 +44,7 @@ class Chunk:
 
 @dataclass(frozen=True)
 class Leg:
-    """One step of an elimination walk; `walk` is None at the start."""
+    """A stretch of an elimination walk; `walk` is None at the start."""
 
     problem: Problem
     seed: int
@@ -57,9 +58,14 @@ class Leg:
         return _digest(self.problem, "leg", self.seed, self.walk_number, self.leg_number)
 
     def run(self) -> Walk:
-        """The walk after this step."""
+        """The walk after a few steps, more of them where they are quick."""
         rng = _generator(self.key)
-        return set_out(self.problem, self.walk_number, rng) if self.walk is None else advance(self.problem, self.walk, rng)
+        walk = set_out(self.problem, rng) if self.walk is None else self.walk
+        for _ in range(max(1, _LEG_NUMBERS // len(self.problem.basis) ** 2)):
+            if walk.ended:
+                break
+            walk = advance(self.problem, walk, rng)
+        return walk
 
 
 def run_task(task: Chunk | Leg) -> FloatArray | Walk:
