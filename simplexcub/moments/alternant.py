@@ -9,8 +9,8 @@ where T is the degree of homogeneity of the unnormalised density. Hilbert–Schm
 kernel x − y (two Vandermonde determinants over the Laguerre weight, row by row) and T = N(N + c). Bures measures have
 (x − y)/(x + y) (Schur's Pfaffian, once for the density and once for the integrated pairs) and T = N(c + 1) + N(N−1)/2.
 
-A term depends on the *set* of the x_i alone, up to sign, and vanishes where two coincide. So each set is evaluated once,
-as a ratio to the set of M(0), and the sum runs over the few permutations that keep all x_i apart.
+A term depends on the *set* of the x_i alone, up to sign, and vanishes where two coincide. So each set is evaluated
+once, as a ratio to the set of M(0), and the sum runs over the few permutations that keep all x_i apart.
 
 References: K. Życzkowski, H.-J. Sommers, J. Phys. A 34 (2001) 7111; H.-J. Sommers, K. Życzkowski, J. Phys. A 36
 (2003) 10083; M. L. Mehta, *Random Matrices* (2004), chapter 17; I. G. Macdonald, *Symmetric Functions and Hall
@@ -89,8 +89,8 @@ def shape_mean(nu: tuple[int, ...], n: int, c: Fraction, kernel: Kernel) -> Frac
 def _surviving_sets(parts: tuple[int, ...], n: int) -> dict[tuple[int, ...], int]:
     """Signed number of permutations that lead to each set of distinct x_i, written as the partition ν of the shifts.
 
-    The rows are placed from the largest σ down; row i with exponent a lands at a − i. Rows with exponent 0 stay where they
-    are, so a later row can only land in a hole that an earlier one left, or above all: that ends the search early.
+    The rows are placed from the largest σ down; row i with exponent a lands at a − i. Rows with exponent 0 stay where
+    they are, so a later row can only land in a hole that an earlier one left, or above all: that ends the search early.
     """
     found: dict[tuple[int, ...], int] = {}
 

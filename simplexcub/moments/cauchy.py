@@ -5,7 +5,7 @@ Gaussian integration over a Hermitian matrix H turns the Bures pair factors into
     ∫ dH exp(−Tr X H²) ∝ Π_i λ_i^{−1/2} Π_{i<j} 1/(λ_i + λ_j),
 
 so that X with density ∝ Π λ_i^c Π (λ_i − λ_j)²/(λ_i + λ_j) e^{−λ_i} is a Wishart matrix of scale (1 + H²)^{−1} and
-κ = N + c + 1/2 degrees of freedom, where H has density ∝ det(1 + H²)^{−κ}. Means of Schur functions follow in two steps:
+κ = N + c + 1/2 degrees of freedom, where H has density ∝ det(1 + H²)^{−κ}. Means of Schur functions follow:
 
     E[s_ν(X) | H] = s_ν(y) Π_{(i,j)∈ν} (κ + j − i),      y the eigenvalues of (1 + H²)^{−1}.
 

@@ -3,13 +3,13 @@
 The density is ∝ Π λ_i^c Π |λ_i − λ_j|^β on the ordered chamber with integers c ≥ 0 and β ≥ 0 (β = 0: Dirichlet, β = 1:
 real, β = 2: complex matrices). There every difference is non-negative, so the density is a polynomial.
 
-- Chamber: the chamber is a simplex with vertices (1/k, …, 1/k, 0, …, 0), so λ_i = Σ_{k≥i} b_k/k with barycentric b; both the
-  density and the monomial become polynomials in b, integrated over the flat simplex.
+- Chamber: the chamber is a simplex with vertices (1/k, …, 1/k, 0, …, 0), so λ_i = Σ_{k≥i} b_k/k with barycentric b;
+  both the density and the monomial become polynomials in b, integrated over the flat simplex.
 - Nested: on the unconstrained ensemble with weight e^{−Σλ}, integrate from the largest eigenvalue down,
   ∫_y^∞ x^m e^{−jx} dx = e^{−jy} Σ_{k≤m} (m!/k!) y^k / j^{m−k+1}, and divide by (T)_{|a|} for the fixed trace.
 
-References: H. A. David, H. N. Nagaraja, *Order Statistics* (2003), section 2.5, for exponential spacings, which the vertices
-generalise; both integrals are elementary.
+Reference: H. A. David, H. N. Nagaraja, *Order Statistics* (2003), section 2.5, for exponential spacings, which the
+vertices generalise; both integrals are elementary.
 """
 
 from __future__ import annotations
@@ -56,9 +56,10 @@ def _weighted(m: tuple[int, ...], beta: int, c: int) -> int:
     factorial = math.factorial
     total = 0
     for p, d in _chamber_density(len(m), beta, c).items():
+        value = d
         for x, y in zip(p, m, strict=True):
-            d *= factorial(x + y)
-        total += d
+            value *= factorial(x + y)
+        total += value
     return total
 
 

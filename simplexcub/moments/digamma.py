@@ -1,4 +1,4 @@
-"""Numbers of the form r + Σ_x b_x ψ(x) with rational r, b_x and x, Σ b_x = 0: the closed form of every mean logarithm here.
+"""Numbers r + Σ_x b_x ψ(x) with rational r, b_x and x, Σ b_x = 0: the closed form of every mean logarithm here.
 
 ψ(x + 1) = ψ(x) + 1/x brings each argument into (0, 1], where equal arguments merge. What is left is rational where the
 digamma terms cancel, and r + s·ln 2 where only ψ(1) and ψ(1/2) = ψ(1) − 2 ln 2 remain.
@@ -10,12 +10,12 @@ from __future__ import annotations
 
 from collections.abc import Mapping
 from dataclasses import dataclass
+from decimal import Decimal
 from fractions import Fraction
 
 from mpmath import mp, mpf
 
 from simplexcub.errors import InputError
-
 
 MOST_STEPS = 50_000  # longer sums of reciprocals make fractions of more digits than anyone reads
 
@@ -50,17 +50,15 @@ class DigammaSum:
         lowest: dict[Fraction, Fraction] = {}
         for x, b in sorted(digammas.items()):
             base = lowest.setdefault(x % 1, x)
-            if x - base <= MOST_STEPS:
-                total += b * _reciprocals(base, int(x - base))
-                x = base
-            reduced[x] = reduced.get(x, Fraction(0)) + b
+            kept = base if x - base <= MOST_STEPS else x
+            total += b * _reciprocals(kept, int(x - kept))
+            reduced[kept] = reduced.get(kept, Fraction(0)) + b
         final: dict[Fraction, Fraction] = {}
         for x, b in reduced.items():
             steps = -(-x.numerator // x.denominator) - 1
-            if b and steps <= MOST_STEPS:
-                total += b * _reciprocals(x - steps, steps)
-                x -= steps
-            final[x] = final.get(x, Fraction(0)) + b
+            kept = x - steps if b and steps <= MOST_STEPS else x
+            total += b * _reciprocals(kept, int(x - kept))
+            final[kept] = final.get(kept, Fraction(0)) + b
         return cls(total, tuple(sorted((x, b) for x, b in final.items() if b)))
 
     @property
@@ -78,7 +76,8 @@ class DigammaSum:
             A logarithm or digamma is left.
         """
         if self.digammas:
-            raise InputError("the value must be rational to be a fraction", str(self), "Take value(dps) instead.")
+            kept = ", ".join(f"ψ({x})" for x, _ in self.digammas[:3])
+            raise InputError("the value must be rational to be a fraction", f"terms in {kept}", "Take value(dps).")
         return self.rational
 
     @property
@@ -122,12 +121,18 @@ class DigammaSum:
     def __str__(self) -> str:
         two = self.log_two
         extra = [(two, "ln 2")] if two is not None else [(b, f"ψ({x})") for x, b in self.digammas]
-        text = str(self.rational) if self.rational or not any(b for b, _ in extra) else ""
+        text = fraction_text(self.rational) if self.rational or not any(b for b, _ in extra) else ""
         for b, name in extra:
             if b:
-                size = "" if abs(b) == 1 else f"{abs(b)} "
+                size = "" if abs(b) == 1 else f"{fraction_text(abs(b))} "
                 text += (" - " if b < 0 else " + ") + size + name if text else ("-" if b < 0 else "") + size + name
         return text
+
+
+def fraction_text(value: Fraction) -> str:
+    """The fraction in digits, however many; ``str`` alone refuses integers beyond some thousands."""
+    top = format(Decimal(value.numerator), "f")
+    return top if value.denominator == 1 else f"{top}/{format(Decimal(value.denominator), 'f')}"
 
 
 def _reciprocals(start: Fraction, count: int) -> Fraction:

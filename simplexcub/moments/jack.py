@@ -9,11 +9,11 @@ coefficient 1,
 divided by (T)_{|κ|} for a fixed trace. The coefficients of P_κ in monomials come from its being an eigenfunction of the
 Laplace–Beltrami operator; solving the triangular system gives the means of the monomials.
 
-The table for a degree grows with the square of the number of its partitions into N parts or fewer; up to 250 of them are
-taken: degree 16 for any N, 20 for N = 4 or 5, 50 for N = 3, every degree up to 498 for N = 2.
+The table for a degree grows with the square of the number of its partitions into N parts or fewer; up to 250 of them
+are taken: degree 16 for any N, 21 for N = 5, 28 for N = 4, 51 for N = 3, 499 for N = 2.
 
-References: R. J. Muirhead, *Aspects of Multivariate Statistical Theory* (1982), section 7.2; I. G. Macdonald, *Symmetric
-Functions and Hall Polynomials* (1995), VI.10; K. W. J. Kadell, Adv. Math. 130 (1997) 33.
+References: R. J. Muirhead, *Aspects of Multivariate Statistical Theory* (1982), section 7.2; I. G. Macdonald,
+*Symmetric Functions and Hall Polynomials* (1995), VI.10; K. W. J. Kadell, Adv. Math. 130 (1997) 33.
 """
 
 from __future__ import annotations

@@ -17,10 +17,11 @@ from __future__ import annotations
 from fractions import Fraction
 from functools import lru_cache
 
+from simplexcub.errors import InputError
 from simplexcub.moments.dirichlet import rising
-from simplexcub.moments.schur import check_reach, monomial_from_power_sums
+from simplexcub.moments.schur import monomial_from_power_sums
 
-MOST_LOOP_SHAPES = 6_000  # all partitions up to degree 30
+HIGHEST_LOOP_DEGREE = 60
 
 
 @lru_cache(maxsize=262144)
@@ -44,7 +45,7 @@ def _free_power_sum(parts: tuple[int, ...], n: int, beta: Fraction, c: Fraction)
 
 
 def _mean_with(rest: tuple[int, ...], more: tuple[int, ...], n: int, beta: Fraction, c: Fraction) -> Fraction:
-    factor = n ** sum(m == 0 for m in more)
+    factor = Fraction(n) ** more.count(0)
     parts = tuple(sorted((*rest, *(m for m in more if m)), reverse=True))
     return factor * _free_power_sum(parts, n, beta, c)
 
@@ -55,10 +56,11 @@ def loop_power_sum(parts: tuple[int, ...], n: int, beta: Fraction, c: Fraction) 
     Raises
     ------
     InputError
-        Degree above 30.
+        Degree above 60.
     """
     degree = sum(parts)
-    check_reach(degree, degree, MOST_LOOP_SHAPES)
+    if degree > HIGHEST_LOOP_DEGREE:
+        raise InputError(f"the degree of a loop equation must be at most {HIGHEST_LOOP_DEGREE}", degree)
     trace = n * (c + 1) + beta * Fraction(n * (n - 1), 2)
     return _free_power_sum(parts, n, beta, c) / rising(trace, degree)
 

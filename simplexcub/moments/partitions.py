@@ -84,3 +84,21 @@ def distinct_permutations(items: Sequence[int]) -> Iterator[tuple[int, ...]]:
             j -= 1
         order[i], order[j] = order[j], order[i]
         order[i + 1 :] = reversed(order[i + 1 :])
+
+
+def set_partitions(items: tuple[int, ...]) -> Iterator[list[tuple[int, ...]]]:
+    """Every way to split `items`, taken as different, into blocks.
+
+    Examples
+    --------
+    >>> list(set_partitions((2, 3)))
+    [[(2,), (3,)], [(2, 3)]]
+    """
+    if not items:
+        yield []
+        return
+    first, rest = items[0], items[1:]
+    for blocks in set_partitions(rest):
+        yield [(first,), *blocks]
+        for i, block in enumerate(blocks):
+            yield [*blocks[:i], (first, *block), *blocks[i + 1 :]]

@@ -16,9 +16,10 @@ A. Sarkar, S. Kumar, J. Phys. A 52 (2019) 295203; L. Wei, J. Phys. A 53 (2020) 2
 from __future__ import annotations
 
 import math
-from collections import defaultdict
+from collections import Counter, defaultdict
 from collections.abc import Callable, Iterable, Sequence
 from fractions import Fraction
+from typing import TypeAlias
 
 from mpmath import mp, mpf
 
@@ -26,14 +27,14 @@ from simplexcub.moments.alternant import Kernel, homogeneity
 from simplexcub.moments.digamma import DigammaSum
 from simplexcub.moments.dirichlet import rising
 
-Power = Fraction | mpf
+Power: TypeAlias = Fraction | mpf
 
 
 def _mp(x: Power) -> mpf:
     return mpf(x.numerator) / x.denominator if isinstance(x, Fraction) else mpf(x)
 
 
-def _stable_sum(terms: Callable[[], Iterable[mpf]], dps: int) -> mpf:
+def stable_sum(terms: Callable[[], Iterable[mpf]], dps: int) -> mpf:
     """Σ terms() to `dps` digits; repeated with more working digits where the terms cancel."""
     extra = 15
     while True:
@@ -48,19 +49,17 @@ def _stable_sum(terms: Callable[[], Iterable[mpf]], dps: int) -> mpf:
         extra = lost + 15
 
 
+def dirichlet_component_power(a: Fraction, whole: Fraction, q: Power) -> mpf:
+    """E[λ_i^q] = (α_i)_q/(Σα)_q at the working precision."""
+    low, total, x = _mp(a), _mp(whole), _mp(q)
+    return mp.gammaprod([low + x, total], [low, total + x])
+
+
 def dirichlet_power_mean(alpha: Sequence[Fraction], q: Power, dps: int) -> mpf:
     """E[Σ λ_i^q] over Dirichlet(α), q > −min α."""
-
-    def terms() -> Iterable[mpf]:
-        whole, x = _mp(sum(alpha, Fraction(0))), _mp(q)
-        scale = mp.gammaprod([whole], [whole + x])
-        counts: dict[Fraction, int] = defaultdict(int)
-        for a in alpha:
-            counts[a] += 1
-        for a, count in counts.items():
-            yield count * scale * mp.gammaprod([_mp(a) + x], [_mp(a)])
-
-    return _stable_sum(terms, dps)
+    whole = sum(alpha, Fraction(0))
+    counts = Counter(alpha)
+    return stable_sum(lambda: [m * dirichlet_component_power(a, whole, q) for a, m in counts.items()], dps)
 
 
 def dirichlet_log_mean(alpha: Sequence[Fraction], k: int) -> DigammaSum:
@@ -93,7 +92,7 @@ def eigenvalue_power_mean(q: Power, n: int, c: Fraction, kernel: Kernel, dps: in
             yield term
             weight *= (y + x) / y * (x + s + 1) / (x + s + 1 - n) * (s + 1 - n) / (s + 1)
 
-    return _stable_sum(terms, dps)
+    return stable_sum(terms, dps)
 
 
 def _shift_product(s: int, k: int, n: int) -> Fraction:

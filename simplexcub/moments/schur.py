@@ -14,6 +14,7 @@ import math
 from collections.abc import Callable, Sequence
 from fractions import Fraction
 from functools import lru_cache
+from itertools import accumulate
 
 from simplexcub.errors import InputError
 from simplexcub.moments.dirichlet import rising
@@ -22,6 +23,7 @@ from simplexcub.moments.transitions import augmented_in_power_sums, power_sums_i
 
 __all__ = [
     "check_reach",
+    "check_strips",
     "content_product",
     "distinct_permutations",
     "monomial_from_power_sums",
@@ -32,6 +34,7 @@ __all__ = [
 ]
 
 MOST_SHAPES = 20_000
+FEW_PARTS = 8  # whose 4140 set partitions are always quick
 
 
 def content_product(nu: tuple[int, ...], x: Fraction | int) -> Fraction:
@@ -76,12 +79,36 @@ def check_reach(degree: int, n: int, most: int = MOST_SHAPES) -> None:
         )
 
 
+def check_strips(parts: Sequence[int], n: int, most: int = MOST_SHAPES) -> None:
+    """Refuse power sums that expand into too many Schur functions, counting at most N border strips per part.
+
+    Raises
+    ------
+    InputError
+        More than `most` shapes.
+    """
+    shapes = 1
+    for length in accumulate(parts):
+        shapes *= min(length, n)
+        if shapes > most:
+            check_reach(sum(parts), n, most)
+            return
+
+
 def monomial_from_power_sums(
     exponents: Sequence[int], power_sum: Callable[[tuple[int, ...]], Fraction], n: int | None = None
 ) -> Fraction:
-    """E[λ^a] of a symmetric measure from its means of power-sum products; zeros in `exponents` may be left out with `n`."""
+    """E[λ^a] of a symmetric measure from its means of power-sum products; with `n`, zeros may be left out.
+
+    Raises
+    ------
+    InputError
+        Too many ways to join the exponents.
+    """
     parts = tuple(sorted((a for a in exponents if a), reverse=True))
     n = len(exponents) if n is None else n
+    if len(parts) > FEW_PARTS:
+        check_reach(sum(parts), len(parts))
     total = Fraction(0)
     for mu, coefficient in augmented_in_power_sums(parts).items():
         total += coefficient * power_sum(mu)
@@ -91,7 +118,7 @@ def monomial_from_power_sums(
 @lru_cache(maxsize=65536)
 def schur_power_sum(parts: tuple[int, ...], n: int, k: int) -> Fraction:
     """E[Π p_k over `parts`] over the induced measure, by characters and content products."""
-    check_reach(sum(parts), n)
+    check_strips(parts, n)
     total = Fraction(0)
     for nu, character in power_sums_in_schur(parts, n).items():
         total += character * schur_mean(nu, n, k)
