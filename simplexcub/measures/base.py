@@ -162,7 +162,6 @@ class Measure(ABC):
 
     def power_sum_covariance(self, j: int, k: int) -> Fraction:
         """cov(p_j, p_k), exactly; the variance of p_k where j = k.
-
         Examples
         --------
         >>> from simplexcub.measures import hilbert_schmidt

@@ -97,7 +97,7 @@ class BetaEnsemble(Measure):
         total = self.N * (self.c + 1) + self.N * (self.N - 1) * half
         power, tex_power = power_product(self.c, self.N)
         pairs, tex_pairs = pair_product(
-            f"|λ{{i}}−λ{{j}}|^{_plain(self.beta)}", rf"|\lambda_i-\lambda_j|^{{{self.beta}}}", self.N
+            f"|λ{{i}}−λ{{j}}|{_plain(self.beta)}", rf"|\lambda_i-\lambda_j|{_tex(self.beta)}", self.N
         )
         low, step = self.c + 1, 1 + half
         plain = f"Γ({total}) Π_(j<{self.N}) Γ({step})/(Γ({low}+{half}j) Γ({step}+{half}j)) {power}{pairs}"
@@ -112,4 +112,8 @@ class BetaEnsemble(Measure):
 
 
 def _plain(x: Fraction) -> str:
-    return str(x) if x.denominator == 1 else f"({x})"
+    return "" if x == 1 else f"^{x}" if x.denominator == 1 else f"^({x})"
+
+
+def _tex(x: Fraction) -> str:
+    return "" if x == 1 else f"^{{{x}}}"

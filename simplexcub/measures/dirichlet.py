@@ -17,6 +17,8 @@ from simplexcub.moments.dirichlet import rising, rising_factorial_moment, stick_
 from simplexcub.moments.powersum import dirichlet_power_sum
 from simplexcub.moments.real import dirichlet_log_mean, dirichlet_power_mean
 
+LONGEST_FACTORIAL = 20  # beyond it the volume is left as a factorial
+
 
 @dataclass(frozen=True)
 class Dirichlet(Measure):
@@ -69,8 +71,8 @@ class Dirichlet(Measure):
 
     def density(self) -> tuple[str, str]:
         if self.family == "flat":
-            volume = math.factorial(self.N - 1)
-            return str(volume), str(volume)
+            volume = str(math.factorial(self.N - 1)) if self.N <= LONGEST_FACTORIAL else f"{self.N - 1}!"
+            return volume, volume
         plain = " ".join(f"λ{i}^({a - 1})" for i, a in enumerate(self.alpha, 1) if a != 1)
         latex = r"\,".join(rf"\lambda_{{{i}}}^{{{a - 1}}}" for i, a in enumerate(self.alpha, 1) if a != 1)
         total = sum(self.alpha)

@@ -20,16 +20,19 @@ Polynomials* (1995), III.8 for Schur's Pfaffian.
 from __future__ import annotations
 
 import math
-from collections.abc import Iterable
+from collections.abc import Iterable, Iterator
 from enum import Enum
 from fractions import Fraction
 from functools import lru_cache
+from itertools import groupby
 
 from simplexcub.errors import InputError
 from simplexcub.moments.partitions import orderings
+from simplexcub.moments.reach import check_strips
 from simplexcub.moments.transitions import power_sums_in_schur
 
 MOST_TERMS = 2_000_000
+HIGH_DEGREE, MOST_WORK = 200, 5_000_000
 
 
 class Kernel(Enum):
@@ -72,17 +75,34 @@ def shape_mean(nu: tuple[int, ...], n: int, c: Fraction, kernel: Kernel) -> Frac
             if kernel is Kernel.RATIO:
                 top *= x + base + q
                 bottom *= x + base + q + q * unmoved
-        for j in range(i):
+        for j in range(nu.index(part)):
             top *= new[j] - new[i]
             bottom *= old[j] - old[i]
             if kernel is Kernel.RATIO:
                 top *= old[j] + old[i]
                 bottom *= new[j] + new[i]
+    if kernel is Kernel.RATIO:
+        for first, last, part in _equal_runs(nu):
+            for s in range(2 * first + 1, 2 * last):
+                # equally shifted rows i < j with i + j = s share one sum, and their differences are unchanged
+                pairs = (min(s - first, last) - max(s - last, first) + 1) // 2
+                both = q * (2 * n - s) + 2 * base
+                top *= both**pairs
+                bottom *= (both + 2 * q * part) ** pairs
     total = homogeneity(n, c, kernel)
     for u in range(sum(nu)):
         top *= total.denominator
         bottom *= total.numerator + u * total.denominator
     return Fraction(top, bottom)
+
+
+def _equal_runs(nu: tuple[int, ...]) -> Iterator[tuple[int, int, int]]:
+    """First and last row of each run of equal parts, and the part."""
+    first = 0
+    for part, run in groupby(nu):
+        last = first + sum(1 for _ in run) - 1
+        yield first, last, part
+        first = last + 1
 
 
 @lru_cache(maxsize=65536)
@@ -114,6 +134,11 @@ def _surviving_sets(parts: tuple[int, ...], n: int) -> dict[tuple[int, ...], int
     return {nu: count for nu, count in found.items() if count}
 
 
+def _check_work(terms: int, degree: int, n: int) -> None:
+    if degree > HIGH_DEGREE and terms * degree > MOST_WORK:
+        raise InputError(f"the degree must be lower for N = {n} and this many terms", f"degree {degree}, {terms} terms")
+
+
 def _total(terms: Iterable[tuple[int, Fraction]]) -> Fraction:
     """Σ count · value over one common denominator, which is quicker than adding fractions one by one."""
     pairs = list(terms)
@@ -136,6 +161,7 @@ def alternant_moment(exponents: tuple[int, ...], c: Fraction, kernel: Kernel) ->
         raise InputError(
             f"the alternating sum must have at most {MOST_TERMS} terms", terms, "Leave the route to the package."
         )
+    _check_work(terms, sum(exponents), n)
     sets = _surviving_sets(tuple(a for a in exponents if a), n)
     return _total((count, shape_mean(nu, n, c, kernel)) for nu, count in sets.items()) / orderings(exponents)
 
@@ -143,5 +169,7 @@ def alternant_moment(exponents: tuple[int, ...], c: Fraction, kernel: Kernel) ->
 @lru_cache(maxsize=65536)
 def alternant_power_sum(parts: tuple[int, ...], n: int, c: Fraction, kernel: Kernel) -> Fraction:
     """E[Π p_k over `parts`], p_k = Σ λ_i^k, with the characters of the symmetric group as coefficients."""
+    check_strips(parts, n)
     characters = power_sums_in_schur(parts, n)
+    _check_work(len(characters), sum(parts), n)
     return _total((character, shape_mean(nu, n, c, kernel)) for nu, character in characters.items())

@@ -30,7 +30,8 @@ from itertools import product
 
 from simplexcub.moments.dirichlet import rising
 from simplexcub.moments.partitions import orderings, partitions
-from simplexcub.moments.schur import check_reach, content_product, monomial_from_power_sums, schur_at_ones
+from simplexcub.moments.reach import check_reach
+from simplexcub.moments.schur import content_product, monomial_from_power_sums, schur_at_ones
 from simplexcub.moments.transitions import kostka, power_sums_in_schur
 
 

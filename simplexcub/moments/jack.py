@@ -24,7 +24,7 @@ from functools import lru_cache
 
 from simplexcub.moments.dirichlet import rising
 from simplexcub.moments.partitions import orderings, partitions
-from simplexcub.moments.schur import check_reach
+from simplexcub.moments.reach import check_reach
 from simplexcub.moments.transitions import power_sums_in_augmented
 
 MOST_JACK_SHAPES = 250

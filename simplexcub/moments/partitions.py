@@ -41,6 +41,8 @@ def count_partitions(total: int, most_parts: int) -> int:
     >>> count_partitions(100, 4)
     8037
     """
+    if most_parts <= 2:
+        return (total // 2 if most_parts == 2 else 0) + (1 if most_parts or not total else 0)
     ways = [1] + [0] * total
     for part in range(1, min(most_parts, total) + 1):
         for size in range(part, total + 1):

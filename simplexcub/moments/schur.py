@@ -14,16 +14,13 @@ import math
 from collections.abc import Callable, Sequence
 from fractions import Fraction
 from functools import lru_cache
-from itertools import accumulate
 
-from simplexcub.errors import InputError
 from simplexcub.moments.dirichlet import rising
-from simplexcub.moments.partitions import count_partitions, distinct_permutations
+from simplexcub.moments.partitions import distinct_permutations
+from simplexcub.moments.reach import check_reach, check_strips
 from simplexcub.moments.transitions import augmented_in_power_sums, power_sums_in_schur
 
 __all__ = [
-    "check_reach",
-    "check_strips",
     "content_product",
     "distinct_permutations",
     "monomial_from_power_sums",
@@ -33,7 +30,6 @@ __all__ = [
     "schur_power_sum",
 ]
 
-MOST_SHAPES = 20_000
 FEW_PARTS = 8  # whose 4140 set partitions are always quick
 
 
@@ -60,39 +56,6 @@ def schur_at_ones(nu: tuple[int, ...], n: int) -> Fraction:
 def schur_mean(nu: tuple[int, ...], n: int, k: int) -> Fraction:
     """E[s_ν] over the induced measure of N eigenvalues and environment size K; `nu` is a partition with no zeros."""
     return schur_at_ones(nu, n) * content_product(nu, k) / rising(n * k, sum(nu))
-
-
-def check_reach(degree: int, n: int, most: int = MOST_SHAPES) -> None:
-    """Refuse a degree whose partitions are too many to list.
-
-    Raises
-    ------
-    InputError
-        More than `most` partitions of `degree` into at most N parts.
-    """
-    shapes = count_partitions(degree, n)
-    if shapes > most:
-        raise InputError(
-            f"the degree must have at most {most} partitions into {n} parts or fewer",
-            f"degree {degree} with {shapes}",
-            "Ask for a lower degree.",
-        )
-
-
-def check_strips(parts: Sequence[int], n: int, most: int = MOST_SHAPES) -> None:
-    """Refuse power sums that expand into too many Schur functions, counting at most N border strips per part.
-
-    Raises
-    ------
-    InputError
-        More than `most` shapes.
-    """
-    shapes = 1
-    for length in accumulate(parts):
-        shapes *= min(length, n)
-        if shapes > most:
-            check_reach(sum(parts), n, most)
-            return
 
 
 def monomial_from_power_sums(
