@@ -30,6 +30,7 @@ from simplexcub.moments.powersum import power_sum_moment
 from simplexcub.moments.real import eigenvalue_inverse_mean, eigenvalue_log_mean, eigenvalue_power_mean
 from simplexcub.moments.schur import schur_moment, schur_power_sum
 
+FEW_COMPONENTS = 7
 FEW_TERMS = 50_000  # beyond it the characters are quicker than the alternating sum
 
 
@@ -51,7 +52,8 @@ class Spectrum(Measure):
         return True
 
     def _default_route(self, exponents: tuple[int, ...]) -> str:
-        return self.routes[0] if alternant_terms(exponents) <= FEW_TERMS else self.routes[-1]
+        few = self.N <= FEW_COMPONENTS or alternant_terms(exponents) <= FEW_TERMS
+        return self.routes[0] if few else self.routes[-1]
 
     def _power_sum(self, parts: tuple[int, ...], route: str | None) -> Fraction:
         return alternant_power_sum(parts, self.N, self.exponent, self.kernel)

@@ -6,7 +6,6 @@ A partition is a tuple of positive integers, largest first; the empty tuple is t
 from __future__ import annotations
 
 import math
-from collections import Counter
 from collections.abc import Iterator, Sequence
 from functools import lru_cache
 
@@ -60,8 +59,8 @@ def orderings(exponents: Sequence[int], places: int | None = None) -> int:
     """
     parts = [e for e in exponents if e]
     count = math.perm(len(exponents) if places is None else places, len(parts))
-    for multiplicity in Counter(parts).values():
-        count //= math.factorial(multiplicity)
+    for part in set(parts):
+        count //= math.factorial(parts.count(part))
     return count
 
 

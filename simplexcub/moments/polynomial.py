@@ -19,6 +19,7 @@ Polynomial = dict[tuple[int, ...], Fraction]
 LONGEST_TEXT = 4_000
 HIGHEST_DEGREE = 100
 MOST_TERMS = 20_000
+MOST_PRODUCTS = 1_000_000
 _REMEDY = "Write it like (x1 - x2)^2 * x3 + 1/2, with variables x1 … xN."
 
 
@@ -99,16 +100,16 @@ def _walk(node: ast.expr, n: int, source: str) -> Polynomial:
     if isinstance(node, ast.Name):
         return _variable(node.id, n)
     if isinstance(node, ast.Constant):
-        return _number(ast.get_source_segment(source, node) or "")
+        return _number(ast.get_source_segment(source, node) or "", n)
     if isinstance(node, ast.UnaryOp) and isinstance(node.op, ast.USub | ast.UAdd):
         value = _walk(node.operand, n, source)
         return {a: -x for a, x in value.items()} if isinstance(node.op, ast.USub) else value
     if not isinstance(node, ast.BinOp):
         raise InputError("polynomial must use numbers, x1 … xN, + - * / ^ only", _segment(source, node), _REMEDY)
-    left = _padded(_walk(node.left, n, source), n)
+    left = _walk(node.left, n, source)
     if isinstance(node.op, ast.Pow):
-        return _raise(left, node.right, source)
-    right = _padded(_walk(node.right, n, source), n)
+        return _raise(left, node.right, n, source)
+    right = _walk(node.right, n, source)
     if isinstance(node.op, ast.Add | ast.Sub):
         sign = 1 if isinstance(node.op, ast.Add) else -1
         total = dict(left)
@@ -137,18 +138,14 @@ def _variable(name: str, n: int) -> Polynomial:
     return {(0,) * i + (1,) + (0,) * (n - i - 1): Fraction(1)}
 
 
-def _number(text: str) -> Polynomial:
+def _number(text: str, n: int) -> Polynomial:
     if not re.fullmatch(r"\d+\.?\d*|\.\d+", text, re.ASCII):
         raise InputError("numbers must be whole or decimal", repr(text), _REMEDY)
     value = Fraction(text if text[0] != "." else "0" + text)
-    return {(): value} if value else {}
+    return {(0,) * n: value} if value else {}
 
 
-def _padded(polynomial: Polynomial, n: int) -> Polynomial:
-    return {a or (0,) * n: x for a, x in polynomial.items()}
-
-
-def _raise(base: Polynomial, exponent: ast.expr, source: str) -> Polynomial:
+def _raise(base: Polynomial, exponent: ast.expr, n: int, source: str) -> Polynomial:
     text = ast.get_source_segment(source, exponent) or ""
     if not isinstance(exponent, ast.Constant) or not re.fullmatch(r"\d{1,4}", text, re.ASCII):
         raise InputError("exponents must be whole numbers", repr(text), _REMEDY)
@@ -156,7 +153,7 @@ def _raise(base: Polynomial, exponent: ast.expr, source: str) -> Polynomial:
     degree = max((sum(a) for a in base), default=0)
     if degree * power > HIGHEST_DEGREE or power > HIGHEST_DEGREE:
         raise InputError(f"polynomial must have degree at most {HIGHEST_DEGREE}", f"power {power} of degree {degree}")
-    n = len(next(iter(base), ()))
+    _check_terms(min(math.comb(len(base) + power - 1, power), math.comb(degree * power + n, n)) if base else 1)
     result: Polynomial = {(0,) * n: Fraction(1)}
     for _ in range(power):
         result = _multiply(result, base)
@@ -164,9 +161,8 @@ def _raise(base: Polynomial, exponent: ast.expr, source: str) -> Polynomial:
 
 
 def _multiply(left: Polynomial, right: Polynomial) -> Polynomial:
-    bound = min(len(left) * len(right), _monomials(left, right))
-    if bound > MOST_TERMS:
-        raise InputError(f"polynomial must have at most {MOST_TERMS} terms", f"a product with up to {bound}")
+    if len(left) * len(right) > MOST_PRODUCTS:
+        raise InputError(f"a product must have at most {MOST_PRODUCTS} terms to add", len(left) * len(right))
     total: Polynomial = defaultdict(Fraction)
     for a, x in left.items():
         for b, y in right.items():
@@ -174,16 +170,14 @@ def _multiply(left: Polynomial, right: Polynomial) -> Polynomial:
     return _checked({a: x for a, x in total.items() if x})
 
 
-def _monomials(left: Polynomial, right: Polynomial) -> int:
-    degree = sum(max((sum(a) for a in side), default=0) for side in (left, right))
-    n = len(next(iter(left), ()))
-    return math.comb(degree + n, n)
+def _check_terms(count: int) -> None:
+    if count > MOST_TERMS:
+        raise InputError(f"polynomial must have at most {MOST_TERMS} terms", count)
 
 
 def _checked(polynomial: Polynomial) -> Polynomial:
     degree = max((sum(a) for a in polynomial), default=0)
     if degree > HIGHEST_DEGREE:
         raise InputError(f"polynomial must have degree at most {HIGHEST_DEGREE}", degree)
-    if len(polynomial) > MOST_TERMS:
-        raise InputError(f"polynomial must have at most {MOST_TERMS} terms", len(polynomial))
+    _check_terms(len(polynomial))
     return dict(sorted(polynomial.items(), reverse=True))

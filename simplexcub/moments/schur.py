@@ -30,7 +30,7 @@ __all__ = [
     "schur_power_sum",
 ]
 
-FEW_PARTS = 8  # whose 4140 set partitions are always quick
+FEW_PARTS, MOST_JOINED = 8, 1_000  # eight parts join in 4140 ways at most, which is always quick
 
 
 def content_product(nu: tuple[int, ...], x: Fraction | int) -> Fraction:
@@ -71,7 +71,7 @@ def monomial_from_power_sums(
     parts = tuple(sorted((a for a in exponents if a), reverse=True))
     n = len(exponents) if n is None else n
     if len(parts) > FEW_PARTS:
-        check_reach(sum(parts), len(parts))
+        check_reach(sum(parts), len(parts), MOST_JOINED)
     total = Fraction(0)
     for mu, coefficient in augmented_in_power_sums(parts).items():
         total += coefficient * power_sum(mu)
