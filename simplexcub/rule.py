@@ -204,6 +204,28 @@ def rule_from_orbits(
     )
 
 
+def rule_from_nodes(
+    measure: Measure,
+    degree: int,
+    nodes: Sequence[Sequence[mpf]],
+    weights: Sequence[mpf],
+    *,
+    digits: int,
+    provenance: Provenance,
+) -> Rule:
+    """A rule with no symmetry, from nodes, shape (M, N), and weights, shape (M,), in extended precision."""
+    printed = tuple(tuple(to_decimal(x, digits) for x in node) for node in nodes)
+    return Rule(
+        measure,
+        degree,
+        printed,
+        tuple(to_decimal(w, digits) for w in weights),
+        provenance,
+        symmetry="none",
+        digits=digits,
+    )
+
+
 def _frozen(values: Sequence[Any]) -> FloatArray:
     array = np.array(values, dtype=np.float64)
     array.flags.writeable = False

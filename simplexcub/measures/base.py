@@ -106,7 +106,7 @@ class Measure(ABC):
         if not all(is_integer(a) and a >= 0 for a in powers):
             raise InputError("exponents must be non-negative integers", powers)
         exact = tuple(int(a) for a in powers)
-        return self._moment(exact, self._default_route(exact) if route is None else self._known(route))
+        return self._moment(exact, self.default_route(exact) if route is None else self._known(route))
 
     def power_sum_moment(self, parts: Sequence[int], *, route: str | None = None) -> Fraction:
         """Exact mean E[Π p_k over k in `parts`] of power sums p_k = Σ λ_i^k.
@@ -161,13 +161,7 @@ class Measure(ABC):
         return total
 
     def power_sum_covariance(self, j: int, k: int) -> Fraction:
-        """cov(p_j, p_k), exactly; the variance of p_k where j = k.
-        Examples
-        --------
-        >>> from simplexcub.measures import hilbert_schmidt
-        >>> hilbert_schmidt(2).power_sum_covariance(2, 2)
-        Fraction(3, 175)
-        """
+        """cov(p_j, p_k), exactly; the variance of p_k where j = k."""
         return self.power_sum_cumulant((j, k))
 
     def power_mean(self, q: float | str | Fraction | mpf, *, dps: int = 50) -> mpf:
@@ -264,7 +258,8 @@ class Measure(ABC):
         """
         return -self.log_mean(1)
 
-    def _default_route(self, exponents: tuple[int, ...]) -> str:
+    def default_route(self, exponents: tuple[int, ...]) -> str:
+        """The route that :meth:`moment` takes for these exponents when none is asked for."""
         return self.routes[0]
 
     def _known(self, route: str) -> str:

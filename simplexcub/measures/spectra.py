@@ -51,7 +51,7 @@ class Spectrum(Measure):
     def is_symmetric(self) -> bool:
         return True
 
-    def _default_route(self, exponents: tuple[int, ...]) -> str:
+    def default_route(self, exponents: tuple[int, ...]) -> str:
         few = self.N <= FEW_COMPONENTS or alternant_terms(exponents) <= FEW_TERMS
         return self.routes[0] if few else self.routes[-1]
 

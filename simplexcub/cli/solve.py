@@ -1,0 +1,95 @@
+"""`simplexcub solve`: find a rule, check it by the second opinion, and print or save it."""
+
+from __future__ import annotations
+
+import argparse
+from pathlib import Path
+
+from simplexcub.cli.interrupt import InterruptNoted
+from simplexcub.cli.measure import add_measure, measure_of
+from simplexcub.cli.options import duration, whole
+from simplexcub.cli.output import ProgressLine, require_writable
+from simplexcub.cli.speech import complain
+from simplexcub.errors import InputError
+from simplexcub.rule import Rule
+from simplexcub.search import solve
+from simplexcub.table import format_of, render, save
+from simplexcub.verify import verify
+
+EXAMPLE = "simplexcub solve hilbert-schmidt -N 3 -t 7 -o hs.json"
+
+
+def add_options(parser: argparse.ArgumentParser) -> None:
+    """Declare the arguments of the command."""
+    add_measure(parser)
+    parser.add_argument("-t", "--degree", type=whole, required=True, metavar="T", help="degree of exactness")
+    parser.add_argument(
+        "--space", choices=("all",), default="all", help="polynomials to be exact for: all of degree ≤ T (default)"
+    )
+    parser.add_argument(
+        "--symmetry", choices=("full", "none"), default="full", help="symmetry of the node set (default full)"
+    )
+    parser.add_argument("--digits", type=whole, default=50, metavar="D", help="significant digits (default 50)")
+    parser.add_argument(
+        "--budget", type=duration, default=60.0, metavar="TIME", help="time for the search: 90s, 2m, 1h (default 60s)"
+    )
+    parser.add_argument("--seed", type=whole, default=0, metavar="S", help="seed of the random starts (default 0)")
+    parser.add_argument("--jobs", type=whole, default=1, metavar="J", help="processes to search with (default 1)")
+    parser.add_argument(
+        "-o", "--output", type=Path, metavar="FILE", help="save here, in the format of the ending, and print a summary"
+    )
+
+
+def run(args: argparse.Namespace) -> int:
+    """Search, verify, print."""
+    measure = measure_of(args)
+    if args.output:
+        format_of(args.output)
+        require_writable(args.output)
+    with InterruptNoted() as interrupted, ProgressLine() as show:
+        rule = solve(
+            measure,
+            args.degree,
+            space=args.space,
+            symmetry=args.symmetry,
+            digits=args.digits,
+            seed=args.seed,
+            budget=args.budget,
+            jobs=args.jobs,
+            progress=show,
+        )
+        report = verify(rule, progress=show)
+    rule = rule.verified(report.verification)
+    wanted_orbits = measure.is_symmetric and args.symmetry == "full"
+    if rule.provenance.method == "conical product" and wanted_orbits:
+        complain(
+            f"no smaller rule was found in time; this is the conical product rule of {len(rule)} nodes."
+            " A longer --budget or another --seed may find fewer"
+        )
+    _deliver(rule, args.output)
+    if not report.holds:
+        complain(f"the rule was not verified: {'; '.join(report.reasons)}")
+        return 1
+    if interrupted.seen:
+        complain("interrupted; the best rule so far was kept")
+        return 130
+    return 0
+
+
+def _deliver(rule: Rule, output: Path | None) -> None:
+    if output is None:
+        print(render(rule, "text"), end="")
+        return
+    try:
+        save(rule, output)
+    except InputError:
+        # The search is paid for: when the file fails after all, the rule still reaches the caller.
+        print(render(rule, "text"), end="")
+        raise
+    print(f"{_summary(rule)}; saved to {output}")
+
+
+def _summary(rule: Rule) -> str:
+    check = rule.verification
+    found = f", at least {check.lower_bound} needed, residual {check.max_residual}" if check else ""
+    return f"{rule.measure}, {rule.space}, degree {rule.degree}: {len(rule)} nodes, {rule.digits} digits{found}"

@@ -1,0 +1,73 @@
+"""Levenberg–Marquardt on many candidates at once, kept inside the simplex.
+
+One array computation steps the whole batch; each candidate has its own damping. A step is shortened so that no weight
+and no coordinate loses more than a fixed share of itself, so iterates never leave.
+
+References: K. Levenberg, Q. Appl. Math. 2 (1944) 164; D. W. Marquardt, SIAM J. Appl. Math. 11 (1963) 431.
+"""
+
+from __future__ import annotations
+
+from dataclasses import dataclass
+
+import numpy as np
+from numpy.typing import NDArray
+
+from simplexcub.search.system import System
+
+FloatArray = NDArray[np.float64]
+
+CONVERGED = 1e-13
+
+
+@dataclass(frozen=True)
+class Outcome:
+    """Candidates that solved the equations, and how many were started."""
+
+    solutions: FloatArray
+    started: int
+
+
+def solve_batch(system: System, u: FloatArray, *, iterations: int = 120, keep: float = 0.05) -> FloatArray:
+    """Run the batch; return the candidates that solve the equations inside the simplex, shape (S, size)."""
+    residual, jacobian = system.evaluate(u)
+    cost = np.einsum("be,be->b", residual, residual)
+    damping = 1e-2 * np.ones(len(u))
+    best_before = cost.copy()
+    solved: list[FloatArray] = []
+    eye = np.arange(system.size)
+    for iteration in range(1, iterations + 1):
+        gradient = np.einsum("ben,be->bn", jacobian, residual)
+        normal = jacobian.transpose(0, 2, 1) @ jacobian
+        floor = 1e-14 * np.einsum("bnn->b", normal)  # keeps the system regular where a weight or orbit dies out
+        normal[:, eye, eye] += (damping * np.minimum(cost, 1.0) ** 0.5 + floor)[:, None]
+        step = -np.linalg.solve(normal, gradient[:, :, None])[:, :, 0]
+        slack = u @ system.slack_matrix.T + system.slack_offset
+        change = step @ system.slack_matrix.T
+        with np.errstate(divide="ignore", invalid="ignore"):
+            ratio = np.where(change < 0, (1 - keep) * slack / -change, np.inf).min(axis=1)
+        trial = u + np.minimum(ratio, 1.0)[:, None] * step
+        new_residual, new_jacobian = system.evaluate(trial)
+        new_cost = np.einsum("be,be->b", new_residual, new_residual)
+        better = new_cost < cost
+        u[better], residual[better], jacobian[better], cost[better] = (
+            trial[better],
+            new_residual[better],
+            new_jacobian[better],
+            new_cost[better],
+        )
+        damping = np.where(better, damping * 0.3, damping * 4.0)
+        done = cost < CONVERGED**2
+        if done.any():
+            solved.append(u[done])
+        alive = ~done & (damping < 1e12)
+        if iteration % 15 == 0:
+            alive &= cost < 0.5 * best_before
+            best_before = cost.copy()
+        if not alive.all():
+            u, residual, jacobian, cost, damping, best_before = (
+                a[alive] for a in (u, residual, jacobian, cost, damping, best_before)
+            )
+        if not len(u):
+            break
+    return np.concatenate(solved) if solved else np.empty((0, system.size))

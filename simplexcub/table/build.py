@@ -1,0 +1,146 @@
+"""Make the shipped tables: ``python -m simplexcub.table.build``; anyone can rerun it, and it only ever improves them.
+
+Each wanted rule is searched for, verified, and kept if no table of its kind has as few nodes. The index is remade from
+the files at the end, also when the run is interrupted.
+"""
+
+from __future__ import annotations
+
+import argparse
+import logging
+import sys
+from collections.abc import Callable, Collection, Iterable, Iterator, Sequence
+from pathlib import Path
+
+from simplexcub.errors import SimplexcubError
+from simplexcub.measures import FAMILIES, Measure, flat, hilbert_schmidt
+from simplexcub.search import solve
+from simplexcub.table.describe import counted
+from simplexcub.table.files import read_text
+from simplexcub.table.formats import save
+from simplexcub.table.reading import parse
+from simplexcub.table.shipped import add, folder, kind_for, place_for, reindex
+from simplexcub.verify import verify
+
+log = logging.getLogger(__name__)
+
+DIGITS = 50
+# Degrees per number of components. A Gauss rule (N = 2) has odd degree.
+DEGREES = {2: range(1, 42, 2), 3: range(1, 15), 4: range(1, 9)}
+
+
+def targets(
+    families: Collection[str] = (), sizes: Collection[int] = (), only: Collection[int] = ()
+) -> Iterator[tuple[Measure, int]]:
+    """The (measure, degree) pairs of the shipped set, cheapest first; empty arguments stand for all."""
+    for n, degrees in DEGREES.items():
+        for measure in (flat(n), hilbert_schmidt(n)):
+            if (not families or measure.family in families) and (not sizes or n in sizes):
+                yield from ((measure, degree) for degree in degrees if not only or degree in only)
+
+
+def build(
+    wanted: Iterable[tuple[Measure, int]],
+    *,
+    where: Path,
+    budget: float,
+    seed: int = 0,
+    jobs: int = 1,
+    only_missing: bool = False,
+    say: Callable[[str], None] = log.info,
+) -> list[Path]:
+    """Search for each wanted rule, keep those that are better than what is there, and remake the index.
+
+    Parameters
+    ----------
+    wanted : iterable of (Measure, int)
+        Measures and degrees.
+    where : Path
+        The folder of tables.
+    budget : float
+        Seconds of search for each rule.
+    seed, jobs : int
+        Passed to the search.
+    only_missing : bool
+        Skip what has a table already.
+    say : callable
+        Receives one line per rule.
+
+    Returns
+    -------
+    list of Path
+        The files written.
+    """
+    written: list[Path] = []
+    try:
+        for measure, degree in wanted:
+            name = f"{measure}, degree {degree}"
+            if only_missing and _exists(measure, degree, where):
+                continue
+            rule = solve(measure, degree, digits=DIGITS, seed=seed, budget=budget, jobs=jobs)
+            if measure.N > 2 and rule.symmetry != "full":
+                say(f"{name}: no rule in {budget:g} s")
+                continue
+            report = verify(rule)
+            if not (report.holds and report.verification.positive and report.verification.inside):
+                say(f"{name}: {'; '.join(report.reasons) or 'not positive and inside'}")
+                continue
+            path = add(rule.verified(report.verification), where)
+            say(f"{name}: {counted(len(rule), 'node')}, {'kept' if path else 'no better than the table that is there'}")
+            written += [path] if path else []
+    finally:
+        reindex(where)
+    return written
+
+
+def refresh(where: Path, say: Callable[[str], None] = log.info) -> None:
+    """Verify every table again and write its verification anew; the numbers stay as they are."""
+    for path in sorted(where.glob("*/*/*.json")):
+        rule = parse(read_text(path), str(path))
+        report = verify(rule)
+        say(f"{path.relative_to(where)}: {'; '.join(report.reasons) or 'holds'}")
+        if report.verification != rule.verification:
+            save(rule.verified(report.verification), path)
+    reindex(where)
+
+
+def _exists(measure: Measure, degree: int, where: Path) -> bool:
+    kind = kind_for("all", "full", degree)
+    return any((where / place_for(measure)).glob(f"{kind}-*.json"))
+
+
+def main(argv: Sequence[str] | None = None) -> int:
+    """Run the build; status 0, or 2 with one line on bad input."""
+    logging.basicConfig(level=logging.INFO, format="%(message)s", stream=sys.stderr)
+    parser = argparse.ArgumentParser(prog="python -m simplexcub.table.build", description=__doc__)
+    parser.add_argument("--measure", choices=FAMILIES, action="append", default=[], help="only this family")
+    parser.add_argument("-N", type=int, choices=sorted(DEGREES), action="append", default=[], help="only this N")
+    parser.add_argument("-t", type=int, action="append", default=[], metavar="DEGREE", help="only this degree")
+    parser.add_argument("--budget", type=float, default=60.0, metavar="SECONDS", help="for each rule (default 60)")
+    parser.add_argument("--seed", type=int, default=0, help="of the search (default 0)")
+    parser.add_argument("--jobs", type=int, default=1, help="processes (default 1)")
+    parser.add_argument("--only-missing", action="store_true", help="skip rules that have a table already")
+    parser.add_argument("--index", action="store_true", help="only remake the index from the tables")
+    parser.add_argument("--verify", action="store_true", help="only verify every table again")
+    parser.add_argument("--folder", type=Path, default=folder(), help="folder of tables (default: the shipped ones)")
+    options = parser.parse_args(argv)
+    try:
+        if options.verify:
+            refresh(options.folder)
+            return 0
+        build(
+            () if options.index else targets(options.measure, options.N, options.t),
+            where=options.folder,
+            budget=options.budget,
+            seed=options.seed,
+            jobs=options.jobs,
+            only_missing=options.only_missing,
+        )
+    except SimplexcubError as error:
+        log.error("%s", error)
+        return 2
+    return 0
+
+
+if __name__ == "__main__":
+    raise SystemExit(main())

@@ -1,0 +1,111 @@
+"""The formats by name, and choosing one."""
+
+from __future__ import annotations
+
+import os
+from collections.abc import Callable, Mapping
+from dataclasses import dataclass
+from types import MappingProxyType
+
+from simplexcub.errors import InputError
+from simplexcub.rule import Rule
+from simplexcub.table import as_csv, as_json, as_latex, as_markdown, as_npz, as_python, as_text
+from simplexcub.table.files import write_atomically
+from simplexcub.verify import verify
+
+
+@dataclass(frozen=True)
+class Format:
+    """One way to write a rule down.
+
+    Attributes
+    ----------
+    endings : tuple of str
+        File endings that choose it; the first is its own.
+    export : callable
+        Rule → text, or bytes where `binary`. The rule should carry its verification.
+    binary : bool
+    """
+
+    endings: tuple[str, ...]
+    export: Callable[[Rule], str | bytes]
+    binary: bool = False
+
+
+FORMATS: Mapping[str, Format] = MappingProxyType(
+    {
+        "json": Format((".json",), as_json.export),
+        "csv": Format((".csv",), as_csv.export),
+        "text": Format((".txt", ".text", ".dat"), as_text.export),
+        "markdown": Format((".md", ".markdown"), as_markdown.export),
+        "latex": Format((".tex",), as_latex.export),
+        "npz": Format((".npz",), as_npz.export, binary=True),
+        "python": Format((".py",), as_python.export),
+    }
+)
+
+
+def encode(rule: Rule, to: str) -> bytes:
+    """The rule in format `to`, as the bytes of a file; a rule that was never checked is verified first.
+
+    Raises
+    ------
+    InputError
+        An unknown format.
+    """
+    if to not in FORMATS:
+        raise InputError(f"format must be one of {', '.join(FORMATS)}", repr(to))
+    if rule.verification is None:
+        rule = rule.verified(verify(rule).verification)
+    content = FORMATS[to].export(rule)
+    return content if isinstance(content, bytes) else content.encode("utf-8")
+
+
+def render(rule: Rule, to: str = "text") -> str:
+    """The rule as text in format `to`; a rule that was never checked is verified first.
+
+    Raises
+    ------
+    InputError
+        An unknown format, or one that is not text.
+    """
+    if to in FORMATS and FORMATS[to].binary:
+        raise InputError(
+            "a format on the screen must be text", to, f"Write it to a file ending in {FORMATS[to].endings[0]}."
+        )
+    return encode(rule, to).decode("utf-8")
+
+
+def format_of(path: str | os.PathLike[str]) -> str:
+    """The format that a file's ending chooses.
+
+    Raises
+    ------
+    InputError
+        An ending that belongs to no format.
+    """
+    ending = os.path.splitext(os.fspath(path))[1].lower()
+    for name, form in FORMATS.items():
+        if ending in form.endings:
+            return name
+    known = ", ".join(form.endings[0] for form in FORMATS.values())
+    raise InputError(f"the file's ending must be one of {known}", os.fspath(path), "Or name the format: to=..., --to.")
+
+
+def save(rule: Rule, path: str | os.PathLike[str], *, to: str | None = None) -> None:
+    """Write the rule to a file, atomically: whatever goes wrong, an existing file is not lost.
+
+    Parameters
+    ----------
+    rule : Rule
+        Verified first if it never was. A rule that does not hold is written too, and says so.
+    path : path-like
+    to : str, optional
+        Name of the format; by default the ending of `path` chooses it.
+
+    Raises
+    ------
+    InputError
+        An unknown format or a path that cannot be written.
+    """
+    write_atomically(path, encode(rule, to if to is not None else format_of(path)))
