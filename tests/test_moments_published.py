@@ -39,7 +39,7 @@ def test_purity_of_bures_states(n: int) -> None:
 
 @pytest.mark.parametrize("n", [2, 3, 4, 8])
 def test_third_and_fourth_moments_of_hilbert_schmidt_states(n: int) -> None:
-    """Życzkowski & Sommers, J. Phys. A 34 (2001) 7111, eqs. 4.14–4.15."""
+    """Życzkowski & Sommers, J. Phys. A 34 (2001) 7111, section 4."""
     third = Fraction(5 * n * n + 1, (n * n + 1) * (n * n + 2))
     fourth = Fraction(14 * n**3 + 10 * n, (n * n + 1) * (n * n + 2) * (n * n + 3))
     assert hilbert_schmidt(n).power_sum_moment((3,)) == third
