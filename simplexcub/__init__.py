@@ -25,10 +25,17 @@ __version__ = "0.1.0"
 # Loaded when first asked for, so that `import simplexcub` costs nothing and each use pays only for its own floor.
 _HOME = {
     "Measure": "measures",
+    "beta_ensemble": "measures",
+    "bures": "measures",
+    "bures_hall": "measures",
     "dirichlet": "measures",
     "flat": "measures",
     "hilbert_schmidt": "measures",
     "induced": "measures",
+    "ordered": "measures",
+    "orthogonal": "measures",
+    "polynomial_density": "measures",
+    "symplectic": "measures",
     "Rule": "rule",
     "solve": "search",
     "verify": "verify",

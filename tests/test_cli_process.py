@@ -67,7 +67,7 @@ def test_a_terminal_that_cannot_spell_greek_gets_escapes(run_command: Run) -> No
     done = run_command(
         "moments", "flat", "-N", "2", "--exponents", "1,0", environment={"PYTHONIOENCODING": "ascii", "PYTHONUTF8": "0"}
     )
-    assert (done.returncode, done.stdout) == (0, "E[\\u03bb1] = 1/2 = 0.5\n")
+    assert (done.returncode, done.stdout.splitlines()[0]) == (0, "E[\\u03bb1] = 1/2 = 0.5")
 
 
 def test_a_reader_that_leaves_is_no_reason_to_complain() -> None:

@@ -11,16 +11,15 @@ Reference: N. Balakrishnan, V. B. Nevzorov, *A Primer on Statistical Distributio
 
 from __future__ import annotations
 
+import math
 from collections.abc import Sequence
 from fractions import Fraction
 
 
 def rising(x: Fraction | int, k: int) -> Fraction:
     """Rising factorial (x)_k = x (x+1) … (x+k−1)."""
-    product = Fraction(1)
-    for i in range(k):
-        product *= x + i
-    return product
+    p, q = x.numerator, x.denominator
+    return Fraction(math.prod(range(p, p + k * q, q)), q**k)
 
 
 def rising_factorial_moment(alpha: Sequence[Fraction], exponents: Sequence[int]) -> Fraction:

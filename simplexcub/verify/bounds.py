@@ -44,7 +44,7 @@ from simplexcub.verify.residuals import compositions, mean
 PRIME = 2**31 - 1  # products of two residues fit in 64 bits
 LARGEST_BASIS = 350
 MOST_MOMENTS = 4000
-LARGEST_SPECTRUM = 5  # means over spectra cost N! each
+LARGEST_SPECTRUM = 5  # means over spectra cost more than those of Dirichlet measures
 
 IntArray = NDArray[np.int64]
 
@@ -90,7 +90,7 @@ def lower_bound(measure: Measure, degree: int, space: Space = "all") -> int:
     moments = math.comb(degree + measure.N - 1, measure.N - 1)
     if linear > LARGEST_BASIS or moments > MOST_MOMENTS:
         return linear
-    if measure.over_dirichlet()[1] and measure.N > LARGEST_SPECTRUM:
+    if measure.N > LARGEST_SPECTRUM and measure.family not in ("flat", "dirichlet"):
         return linear
     return linear + (_commutator_rank(measure, s) + 1) // 2
 
