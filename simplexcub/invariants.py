@@ -77,13 +77,14 @@ class SubgroupInvariants:
     def _kernel(self) -> FloatArray:
         basis, n = self._basis, self._group.n
         nodes, weights = flat_points(n, self._basis.degree)
-        moved = [np.zeros((len(basis), len(basis))) for _ in self._group.generators]
+        generators = self._group.generators
+        moved = np.zeros((len(generators), len(basis), len(basis)))
         for start in range(0, len(nodes), _CHUNK_POINTS):
             part = slice(start, start + _CHUNK_POINTS)
             here = basis.values(nodes[part]) * weights[part]
-            for matrix, g in zip(moved, self._group.generators, strict=True):
-                matrix += here @ basis.values(nodes[part][:, g]).T
-        total = sum((2 * np.eye(len(basis)) - d - d.T for d in moved), np.zeros((len(basis), len(basis))))
+            for i, g in enumerate(generators):
+                moved[i] += here @ basis.values(nodes[part][:, g]).T
+        total = 2 * len(generators) * np.eye(len(basis)) - (moved + moved.transpose(0, 2, 1)).sum(axis=0)
         columns = []
         for d in range(basis.degree + 1):
             rows = np.flatnonzero(basis.degrees == d)
@@ -95,7 +96,7 @@ class SubgroupInvariants:
         return np.array(columns).T
 
     def __len__(self) -> int:
-        return self._combine.shape[1]
+        return int(self._combine.shape[1])
 
     def jet(self, values: FloatArray, type_: OrbitType) -> FloatArray:
         pattern = np.array(type_.pattern)

@@ -18,7 +18,6 @@ import math
 from collections.abc import Iterator
 from fractions import Fraction
 from functools import lru_cache
-from typing import Any
 
 import numpy as np
 from numpy.typing import NDArray
@@ -204,11 +203,12 @@ def _moment(measure: Measure, exponents: tuple[int, ...]) -> Fraction:
 
 
 def _coefficients(components: int, j: int, t: int) -> Iterator[tuple[int, IntArray, IntArray, IntArray, IntArray]]:
-    """Rows (n, c_difference, c_sum, c_back, c_1) of c_1 Q_n = (c_d (u−v) + c_s s) Q_{n−1} − c_b s² Q_{n−2}, over tails."""
+    """Rows (n, c_d, c_s, c_b, c_1) of c_1 Q_n = (c_d (u − v) + c_s s) Q_{n−1} − c_b s² Q_{n−2}, over all tails."""
     for n in range(2, t + 1):
         a = 2 * np.arange(t + 1 - n, dtype=object) + (components - j - 2)
         top = 2 * n + a
-        yield n, (top - 1) * top * (top - 2), (top - 1) * a * a, 2 * (n + a - 1) * (n - 1) * top, 2 * n * (n + a) * (top - 2)
+        by_difference, by_sum, back = (top - 1) * top * (top - 2), (top - 1) * a * a, 2 * (n + a - 1) * (n - 1) * top
+        yield n, by_difference, by_sum, back, 2 * n * (n + a) * (top - 2)
 
 
 @lru_cache(maxsize=4096)

@@ -54,7 +54,8 @@ def conditions(group: Group, degree: int) -> list[Condition]:
         others = frozenset(types) - union
         needs[others] = max(needs.get(others, 0), len(basis) - rank)
     # A condition follows from another that asks as much of fewer types.
-    return [(s, need) for s, need in needs.items() if need and not any(o < s and more >= need for o, more in needs.items())]
+    implied = {s for s, need in needs.items() if any(o < s and more >= need for o, more in needs.items())}
+    return [(s, need) for s, need in needs.items() if need and s not in implied]
 
 
 def allowed(counts: Counts, wanted: list[Condition]) -> bool:
@@ -71,10 +72,10 @@ def possible_counts(group: Group, degree: int, nodes: int) -> list[Counts]:
     types = list(reversed(group.types))
     masks = [[t in s for t in types] for s, _ in wanted]
     # The most unknowns that one node can bring to a condition, among the types from position i on.
-    rates = [
-        [max((t.unknowns / t.size for t, m in list(zip(types, mask, strict=True))[i:] if m), default=0.0) for i in range(len(types) + 1)]
-        for mask in masks
-    ]
+    rates = [[0.0] for _ in masks]
+    for t, flags in zip(types[::-1], zip(*(mask[::-1] for mask in masks), strict=True), strict=True):
+        for rate, counts_here in zip(rates, flags, strict=True):
+            rate.insert(0, max(rate[0], counts_here * t.unknowns / t.size))
 
     def extend(i: int, left: int, lacks: tuple[int, ...]) -> Iterator[tuple[int, ...]]:
         if any(lack > rate[i] * left + 1e-9 for lack, rate in zip(lacks, rates, strict=True)):
@@ -111,7 +112,8 @@ def fewest_nodes(group: Group, degree: int) -> int:
 
 def _row_space(values: np.ndarray) -> np.ndarray:
     _, singular, rows = np.linalg.svd(values, full_matrices=False)
-    return rows[singular > _RANK_TOLERANCE * singular[0]]
+    found: np.ndarray = rows[singular > _RANK_TOLERANCE * singular[0]]
+    return found
 
 
 def _in_closure(group: Group, special: OrbitType, general: OrbitType) -> bool:

@@ -2,8 +2,9 @@
 
 First some elimination walks come down from rules with many nodes; then random starts try the structures with fewer
 nodes than the best rule, from the fewest nodes upward. That repeats with more walks, more structures and more starts,
-until enough walks have ended at the same number of nodes, or the rounds or the budget end. Tasks may run anywhere, but their results are taken in the order of the plan, so that the same seed
-gives the same rule however many workers there are.
+until enough walks have ended at the same number of nodes, or the rounds or the budget end. Tasks may run anywhere, but
+their results are taken in the order of the plan, so that the same seed gives the same rule however many workers there
+are.
 """
 
 from __future__ import annotations

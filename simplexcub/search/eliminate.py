@@ -159,11 +159,13 @@ def _merging(group: Group, special: OrbitType, type_: OrbitType) -> list[tuple[i
 def _significance(system: System, u: FloatArray) -> FloatArray:
     """How much each orbit carries: weight · ‖φ(representative)‖², smallest where it is least missed."""
     norms = [np.square(system.basis.jet(system.values(u[None], b)[0], b.type)[:, 0]).sum(axis=1) for b in system.blocks]
-    return u[: system.orbits] * np.concatenate(norms)
+    carried: FloatArray = u[: system.orbits] * np.concatenate(norms)
+    return carried
 
 
 def _without(system: System, u: FloatArray, dropped: np.ndarray) -> tuple[Counts, FloatArray]:
-    gone, parts, r = set(int(i) for i in dropped), {}, 0
+    gone, r = {int(i) for i in dropped}, 0
+    parts: Parts = {}
     for type_, orbits in system.split(u).items():
         parts[type_] = [orbit for i, orbit in enumerate(orbits, r) if i not in gone]
         r += len(orbits)

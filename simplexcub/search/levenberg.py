@@ -85,5 +85,5 @@ def _damped_step(residual: FloatArray, jacobian: FloatArray, damping: FloatArray
     floor = 1e-14 * np.einsum("bnn->b", normal)  # keeps the system regular where a weight or orbit dies out
     normal[:, diagonal, diagonal] += (damping + floor)[:, None]
     solved = -np.linalg.solve(normal, side)
-    step: FloatArray = (transposed @ solved if wide else solved)[:, :, 0]
-    return step
+    step = transposed @ solved if wide else solved
+    return np.asarray(step[:, :, 0], dtype=np.float64)

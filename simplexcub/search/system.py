@@ -116,7 +116,7 @@ class System:
         return u @ self.slack_matrix.T + self.slack_offset
 
     def scale(self, u: FloatArray) -> FloatArray:
-        """How far each unknown may move before its orbit meets the boundary, in units of the others; shape (B, size)."""
+        """How far each unknown may move before its orbit meets the boundary, relative to others; shape (B, size)."""
         out = np.empty_like(u)
         out[:, : self.orbits] = u[:, : self.orbits] * self.orbits
         for block in self.blocks:

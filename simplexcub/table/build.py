@@ -1,7 +1,8 @@
 """Make the shipped tables: ``python -m simplexcub.table.build``; anyone can rerun it, and it only ever improves them.
 
-Each wanted rule is searched for, verified, and kept if no table of its kind has as few nodes. The index is remade from
-the files at the end, also when the run is interrupted.
+Each wanted rule is searched for, verified, and kept if no table of its kind has as few nodes. A first run with
+``--symmetry full`` makes the fully symmetric rules; a second with ``--symmetry best`` adds those that need fewer nodes
+with less symmetry. The index is remade from the files at the end, also when the run is interrupted.
 """
 
 from __future__ import annotations
@@ -12,8 +13,9 @@ import sys
 from collections.abc import Callable, Collection, Iterable, Iterator, Sequence
 from pathlib import Path
 
-from simplexcub.errors import SimplexcubError
-from simplexcub.measures import FAMILIES, Measure, flat, hilbert_schmidt
+from simplexcub.errors import NothingFound, SimplexcubError
+from simplexcub.measures import FAMILIES, Measure, bures, flat, hilbert_schmidt
+from simplexcub.rule import Rule
 from simplexcub.search import solve
 from simplexcub.table.describe import counted
 from simplexcub.table.files import read_text
@@ -26,7 +28,7 @@ log = logging.getLogger(__name__)
 
 DIGITS = 50
 # Degrees per number of components. A Gauss rule (N = 2) has odd degree.
-DEGREES = {2: range(1, 42, 2), 3: range(1, 15), 4: range(1, 9)}
+DEGREES = {2: range(1, 42, 2), 3: range(1, 21), 4: range(1, 11), 5: range(1, 8), 6: range(1, 6)}
 
 
 def targets(
@@ -34,7 +36,7 @@ def targets(
 ) -> Iterator[tuple[Measure, int]]:
     """The (measure, degree) pairs of the shipped set, cheapest first; empty arguments stand for all."""
     for n, degrees in DEGREES.items():
-        for measure in (flat(n), hilbert_schmidt(n)):
+        for measure in (flat(n), hilbert_schmidt(n), bures(n)):
             if (not families or measure.family in families) and (not sizes or n in sizes):
                 yield from ((measure, degree) for degree in degrees if not only or degree in only)
 
@@ -46,6 +48,7 @@ def build(
     budget: float,
     seed: int = 0,
     jobs: int = 1,
+    symmetry: str = "full",
     only_missing: bool = False,
     say: Callable[[str], None] = log.info,
 ) -> list[Path]:
@@ -59,8 +62,8 @@ def build(
         The folder of tables.
     budget : float
         Seconds of search for each rule.
-    seed, jobs : int
-        Passed to the search.
+    seed, jobs, symmetry
+        Passed to the search; with less than full symmetry only rules with fewer nodes than every other are kept.
     only_missing : bool
         Skip what has a table already.
     say : callable
@@ -77,9 +80,16 @@ def build(
             name = f"{measure}, degree {degree}"
             if only_missing and _exists(measure, degree, where):
                 continue
-            rule = solve(measure, degree, digits=DIGITS, seed=seed, budget=budget, jobs=jobs)
-            if measure.N > 2 and rule.symmetry != "full":
+            try:
+                rule = solve(measure, degree, symmetry=symmetry, digits=DIGITS, seed=seed, budget=budget, jobs=jobs)
+            except NothingFound:
                 say(f"{name}: no rule in {budget:g} s")
+                continue
+            if rule.provenance.method == "conical product":
+                say(f"{name}: no rule in {budget:g} s")
+                continue
+            if rule.symmetry != "full" and not _fewest(rule, where):
+                say(f"{name}: {counted(len(rule), 'node')}, no fewer than with full symmetry")
                 continue
             report = verify(rule)
             if not (report.holds and report.verification.positive and report.verification.inside):
@@ -109,6 +119,17 @@ def _exists(measure: Measure, degree: int, where: Path) -> bool:
     return any((where / place_for(measure)).glob(f"{kind}-*.json"))
 
 
+def _fewest(rule: Rule, where: Path) -> bool:
+    """Whether a rule beats every table of its measure and degree; those without full symmetry then go."""
+    tables = list((where / place_for(rule.measure)).glob(f"{rule.space}-*-t{rule.degree:02d}-*.json"))
+    if any(int(path.stem.rsplit("-", 1)[1]) <= len(rule) for path in tables):
+        return False
+    for path in tables:
+        if not path.name.startswith(kind_for(rule.space, "full", rule.degree)):
+            path.unlink()
+    return True
+
+
 def main(argv: Sequence[str] | None = None) -> int:
     """Run the build; status 0, or 2 with one line on bad input."""
     logging.basicConfig(level=logging.INFO, format="%(message)s", stream=sys.stderr)
@@ -117,6 +138,7 @@ def main(argv: Sequence[str] | None = None) -> int:
     parser.add_argument("-N", type=int, choices=sorted(DEGREES), action="append", default=[], help="only this N")
     parser.add_argument("-t", type=int, action="append", default=[], metavar="DEGREE", help="only this degree")
     parser.add_argument("--budget", type=float, default=60.0, metavar="SECONDS", help="for each rule (default 60)")
+    parser.add_argument("--symmetry", default="full", help="of the node sets: full (default), best, or a group's name")
     parser.add_argument("--seed", type=int, default=0, help="of the search (default 0)")
     parser.add_argument("--jobs", type=int, default=1, help="processes (default 1)")
     parser.add_argument("--only-missing", action="store_true", help="skip rules that have a table already")
@@ -134,6 +156,7 @@ def main(argv: Sequence[str] | None = None) -> int:
             budget=options.budget,
             seed=options.seed,
             jobs=options.jobs,
+            symmetry=options.symmetry,
             only_missing=options.only_missing,
         )
     except SimplexcubError as error:
