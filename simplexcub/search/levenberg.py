@@ -15,7 +15,8 @@ from simplexcub.search.system import System
 
 FloatArray = NDArray[np.float64]
 
-CONVERGED = 1e-12
+_SOLVED = 1e-12  # norm of residuals at which a candidate counts as solved,
+_SOLVED_NOISE = 20.0  # or so many times the error of the functions themselves
 
 
 def solve_batch(
@@ -37,6 +38,7 @@ def solve_batch(
     residual, jacobian = system.evaluate(u)
     cost = np.einsum("be,be->b", residual, residual)
     damping = 1e-2 * np.ones(len(u))
+    solved_at = max(_SOLVED, _SOLVED_NOISE * system.basis.noise)
     best_before = cost.copy()
     solved: list[FloatArray] = []
     for iteration in range(1, iterations + 1):
@@ -57,7 +59,7 @@ def solve_batch(
             new_cost[better],
         )
         damping = np.where(better, damping * 0.5, damping * 3.0)
-        done = cost < CONVERGED**2
+        done = cost < solved_at**2
         if done.any():
             solved.append(u[done])
             if enough is not None and sum(map(len, solved)) >= enough:
