@@ -9,17 +9,19 @@ from dataclasses import replace
 from pathlib import Path
 from typing import Literal
 
-from mpmath import mp
+import numpy as np
+from mpmath import mp, mpf
 
 import simplexcub
-from simplexcub.errors import InputError
-from simplexcub.measures import Dirichlet, Measure
+from simplexcub.errors import InputError, NothingFound
+from simplexcub.invariants import invariant_basis
+from simplexcub.measures import Measure
 from simplexcub.rule import Provenance, Rule, rule_from_nodes, rule_from_orbits
-from simplexcub.search.conical import MOST_NODES, conical_rule
+from simplexcub.search.conical import MOST_NODES, conical_count, conical_rule
 from simplexcub.search.driver import Budget, Found, Progress, Search
 from simplexcub.search.gauss import gauss_rule
 from simplexcub.search.record import Record
-from simplexcub.search.system import Problem
+from simplexcub.search.system import FloatArray, Problem
 from simplexcub.search.workers import Overdue, Workers, local_workers
 from simplexcub.symmetry import Group, named_group
 
@@ -31,6 +33,8 @@ _PROMISE = {
     3: ("cyclic", "stabiliser", "none", "full"),
     4: ("cyclic", "klein", "dihedral", "stabiliser", "none", "full"),
 }
+_PRODUCT_SHARE = 2  # products with up to so many nodes per equation are worth setting out from
+_NO_PROVENANCE = Provenance("", 0, "", "conical product")
 _PROMISE_ELSE = ("stabiliser", "none", "full")
 
 
@@ -141,6 +145,7 @@ def _search(
             workers=workers,
             most_nodes=most,
             progress=progress,
+            known=_known(measure, degree, group, best),
         )
         workers.deadline = share.start + share.seconds
         try:
@@ -155,17 +160,27 @@ def _search(
     return best
 
 
+def _known(measure: Measure, degree: int, group: Group, best: Found | None) -> list[tuple[FloatArray, FloatArray]]:
+    """Rules that a search without symmetry can set out from: the best so far, or a conical product if that is small."""
+    if group.generators:
+        return []
+    if best is not None:
+        nodes, weights = _written_out(best, 16)
+        return [(np.array(nodes, dtype=float), np.array(weights, dtype=float))]
+    try:
+        small = conical_count(measure, degree) <= _PRODUCT_SHARE * len(invariant_basis(group, degree))
+        product = conical_rule(measure, degree, digits=16, provenance=_NO_PROVENANCE) if small else None
+    except NothingFound:  # some measures have no product rule
+        return []
+    return [] if product is None else [(product.nodes, product.weights)]
+
+
 def _rule(found: Found, digits: int, provenance: Provenance) -> Rule:
     problem = found.problem
     if problem.group.is_full:
         orbits = [(t.multiplicities, values, weight) for t, values, weight in found.orbits]
         return rule_from_orbits(problem.measure, problem.degree, orbits, digits=digits, provenance=provenance)
-    nodes, weights = [], []
-    with mp.workdps(digits + 10):
-        for type_, values, weight in found.orbits:
-            for pattern in problem.group.arrangements(type_):
-                nodes.append([values[label] for label in pattern])
-                weights.append(weight / type_.size)
+    nodes, weights = _written_out(found, digits)
     return rule_from_nodes(
         problem.measure,
         problem.degree,
@@ -177,15 +192,27 @@ def _rule(found: Found, digits: int, provenance: Provenance) -> Rule:
     )
 
 
+def _written_out(found: Found, digits: int) -> tuple[list[list[mpf]], list[mpf]]:
+    """Every node of every orbit, with its share of the orbit's weight."""
+    nodes, weights = [], []
+    with mp.workdps(digits + 10):
+        for type_, values, weight in found.orbits:
+            for pattern in found.problem.group.arrangements(type_):
+                nodes.append([values[label] for label in pattern])
+                weights.append(weight / type_.size)
+    return nodes, weights
+
+
 def _groups(measure: Measure, symmetry: str) -> list[Group]:
     """The groups to search with, each checked to leave the measure unchanged."""
-    alpha = measure.alpha if isinstance(measure, Dirichlet) else ()
+    # A measure that is neither symmetric nor Dirichlet may have no symmetry at all: every component is told apart.
+    labels = (0,) * measure.N if measure.is_symmetric else getattr(measure, "alpha", tuple(range(measure.N)))
+    own = "full" if measure.is_symmetric else "alpha"
     if symmetry == "best":
-        names = _PROMISE.get(measure.N, _PROMISE_ELSE) if measure.is_symmetric else ("alpha", "none")
-        return [named_group(name, measure.N, alpha) for name in names]
-    name = "alpha" if symmetry == "full" and not measure.is_symmetric else symmetry
-    group = named_group(name, measure.N, alpha)
-    if not measure.is_symmetric and any(alpha[i] != alpha[j] for g in group.generators for i, j in enumerate(g)):
+        names = _PROMISE.get(measure.N, _PROMISE_ELSE) if measure.is_symmetric else (own, "none")
+        return [named_group(name, measure.N, labels) for name in names]
+    group = named_group(own if symmetry == "full" else symmetry, measure.N, labels)
+    if any(labels[i] != labels[j] for g in group.generators for i, j in enumerate(g)):
         raise InputError(
             f"symmetry must leave {measure} unchanged", symmetry, "Use full (components of equal alpha) or none."
         )

@@ -9,13 +9,14 @@ are.
 
 from __future__ import annotations
 
+import hashlib
 import time
 from collections.abc import Callable, Sequence
 from dataclasses import dataclass
 from itertools import takewhile
 
 from simplexcub.search.counts import Counts, fewest_nodes, node_count, possible_counts
-from simplexcub.search.eliminate import Walk
+from simplexcub.search.eliminate import Walk, set_out_from
 from simplexcub.search.refine import Orbits, refine
 from simplexcub.search.system import FloatArray, Problem, System
 from simplexcub.search.tasks import Chunk, Leg, describe
@@ -79,6 +80,8 @@ class Search:
     most_nodes : int
         Rules with more nodes are of no interest.
     progress : callable, optional
+    known : sequence of (nodes, weights)
+        Rules to set out from, arrays of shape (M, N) and (M,), for a problem without symmetry.
     """
 
     def __init__(
@@ -91,6 +94,7 @@ class Search:
         workers: Workers,
         most_nodes: int,
         progress: Callable[[Progress], None] | None = None,
+        known: Sequence[tuple[FloatArray, FloatArray]] = (),
     ) -> None:
         self.problem = problem
         self.digits = digits
@@ -99,6 +103,7 @@ class Search:
         self.workers = workers
         self.most_nodes = most_nodes
         self.progress = progress
+        self.known = known
         self.best: Found | None = None
         self._agreed = 0
         self._ended = 0
@@ -106,6 +111,8 @@ class Search:
     def run(self) -> None:
         """Search until the rounds or the budget end."""
         walks, chunks = 0, 0
+        for nodes, weights in self.known:
+            self._walk([0], set_out_from(self.problem, nodes, weights))
         for more_walks, more_chunks, structures, agree in zip(WALKS, CHUNKS, STRUCTURES, AGREE, strict=True):
             for first in range(walks, walks + more_walks, ABREAST):
                 self._walk(range(first, first + ABREAST))
@@ -119,12 +126,13 @@ class Search:
         """Nodes of the largest rule that would still be an improvement."""
         return self.most_nodes if self.best is None else self.best.nodes - 1
 
-    def _walk(self, numbers: Sequence[int]) -> None:
+    def _walk(self, numbers: Sequence[int], begin: Walk | None = None) -> None:
         """Run walks side by side, a leg of each in turn."""
-        walks: dict[int, Walk | None] = dict.fromkeys(numbers)
+        walks: dict[int, Walk | None] = dict.fromkeys(numbers, begin)
+        origin = "" if begin is None else hashlib.sha256(begin.pool.tobytes()).hexdigest()
         leg = 0
         while walks and not self.budget.spent:
-            legs = [Leg(self.problem, self.seed, number, leg, walk) for number, walk in walks.items()]
+            legs = [Leg(self.problem, self.seed, number, leg, walk, origin) for number, walk in walks.items()]
             results = list(self.workers.run_all(legs))
             for number, walk in zip(list(walks), results, strict=True):
                 self._report(f"walk {number + 1} at {describe(walk.counts)}" if walk.counts else "no start for a walk")

@@ -84,6 +84,13 @@ def set_out(problem: Problem, rng: np.random.Generator) -> Walk:
     return Walk(counts, u[None], max(1, sum(c for _, c in counts) // 8), 0, False)
 
 
+def set_out_from(problem: Problem, nodes: FloatArray, weights: FloatArray) -> Walk:
+    """The start of a walk from a known rule, nodes of shape (M, N), for a problem without symmetry."""
+    (type_,) = problem.group.types
+    counts, u = System(problem, ()).join({type_: list(zip(weights, nodes, strict=True))})
+    return Walk(counts, u[None], max(1, len(nodes) // 8), 0, False)
+
+
 def advance(problem: Problem, walk: Walk, rng: np.random.Generator) -> Walk:
     """One step: drop orbits, or drop fewer at once next time, or shake, or give up."""
     step = _drop(problem, walk)

@@ -44,18 +44,22 @@ class Chunk:
 
 @dataclass(frozen=True)
 class Leg:
-    """A stretch of an elimination walk; `walk` is None at the start."""
+    """A stretch of an elimination walk; `walk` is None where it starts from candidates of its own.
+
+    `origin` tells walks apart that start from different known rules.
+    """
 
     problem: Problem
     seed: int
     walk_number: int
     leg_number: int
     walk: Walk | None
+    origin: str = ""
 
     @property
     def key(self) -> str:
         """Name of this piece of work, the same in every process."""
-        return _digest(self.problem, "leg", self.seed, self.walk_number, self.leg_number)
+        return _digest(self.problem, "leg", self.seed, self.walk_number, self.leg_number, self.origin)
 
     def run(self) -> Walk:
         """The walk after a few steps, more of them where they are quick."""
