@@ -8,6 +8,8 @@ from simplexcub.cli.options import listed, whole
 from simplexcub.errors import InputError
 from simplexcub.measures import FAMILIES, Measure, from_parameters
 
+_PARAMETERS = ("N", "K", "alpha", "exponent", "beta", "polynomial")
+
 
 def add_measure(parser: argparse.ArgumentParser, *, option: bool = False) -> None:
     """The measure and its parameters: a positional MEASURE, or ``--measure`` where a file may name it already."""
@@ -17,13 +19,16 @@ def add_measure(parser: argparse.ArgumentParser, *, option: bool = False) -> Non
     else:
         parser.add_argument("measure", metavar="MEASURE", help=f"one of {names}")
     parser.add_argument("-N", type=whole, metavar="N", help="number of outcomes or eigenvalues")
-    parser.add_argument("-K", type=whole, metavar="K", help="size of the environment (induced)")
+    parser.add_argument("-K", type=whole, metavar="K", help="size of the environment (induced and the like)")
     parser.add_argument("--alpha", type=listed, metavar="A,...", help="exact parameters such as 1/2,1,1 (dirichlet)")
+    parser.add_argument("--exponent", metavar="C", help="exponent of each eigenvalue, such as -1/3 (bures-hall, beta)")
+    parser.add_argument("--beta", metavar="B", help="exponent of the differences (beta)")
+    parser.add_argument("--polynomial", metavar="P", help="such as '(x1 - x2)^2 * x3', times --alpha (polynomial)")
 
 
 def measure_of(args: argparse.Namespace) -> Measure:
     """The measure that the options of `add_measure` describe."""
-    return from_parameters({"family": args.measure, "N": args.N, "K": args.K, "alpha": args.alpha})
+    return from_parameters({"family": args.measure, **{name: getattr(args, name) for name in _PARAMETERS}})
 
 
 def stated_measure(args: argparse.Namespace) -> Measure | None:
@@ -35,8 +40,9 @@ def stated_measure(args: argparse.Namespace) -> Measure | None:
         Parameters without ``--measure``.
     """
     if args.measure is None:
-        given = [name for name, value in (("-N", args.N), ("-K", args.K), ("--alpha", args.alpha)) if value is not None]
-        if given:
-            raise InputError("parameters must come with --measure", f"{given[0]} alone", "Or let the file name it all.")
+        for name in _PARAMETERS:
+            if getattr(args, name) is not None:
+                option = f"-{name}" if len(name) == 1 else f"--{name}"
+                raise InputError("parameters must come with --measure", f"{option} alone", "Or let the file name it all.")
         return None
     return measure_of(args)

@@ -8,12 +8,12 @@ from pathlib import Path
 
 from mpmath import mp
 
-from simplexcub.cli.measure import add_measure
+from simplexcub.cli.measure import add_measure, measure_of
 from simplexcub.cli.options import whole, whole_numbers
 from simplexcub.cli.output import exact_text, require_writable
 from simplexcub.decimals import to_decimal
 from simplexcub.errors import InputError
-from simplexcub.measures import Measure, from_parameters, ordered
+from simplexcub.measures import Measure, ordered
 from simplexcub.measures.formulas import log_formula, moment_formula, power_sum_formula, real_power_formula
 from simplexcub.moments.digamma import DigammaSum
 from simplexcub.table.files import write_atomically
@@ -29,9 +29,6 @@ _QUANTITIES = ("exponents", "power_sums", "power", "entropy", "log", "table")
 def add_options(parser: argparse.ArgumentParser) -> None:
     """Declare the arguments of the command."""
     add_measure(parser)
-    parser.add_argument("--exponent", metavar="C", help="exponent of each eigenvalue, such as -1/3 (bures-hall, beta)")
-    parser.add_argument("--beta", metavar="B", help="exponent of the differences (beta)")
-    parser.add_argument("--polynomial", metavar="P", help="such as '(x1 - x2)^2 * x3', times --alpha (polynomial)")
     parser.add_argument("--exponents", type=whole_numbers, metavar="A,...", help="of a monomial, one per component")
     parser.add_argument("--power-sums", type=whole_numbers, metavar="K,...", help="mean of Π p_k, p_k = Σ λ^k")
     parser.add_argument("--power", metavar="Q", help="mean of Σ λ^q for a real q, such as 1/2")
@@ -72,16 +69,7 @@ def _is_given(value: object) -> bool:
 
 
 def _measure(args: argparse.Namespace) -> Measure:
-    record = {
-        "family": args.measure,
-        "N": args.N,
-        "K": args.K,
-        "alpha": args.alpha,
-        "exponent": args.exponent,
-        "beta": args.beta,
-        "polynomial": args.polynomial,
-    }
-    measure = from_parameters(record)
+    measure = measure_of(args)
     return ordered(measure) if args.ordered else measure
 
 
