@@ -43,6 +43,7 @@ def stated_measure(args: argparse.Namespace) -> Measure | None:
         for name in _PARAMETERS:
             if getattr(args, name) is not None:
                 option = f"-{name}" if len(name) == 1 else f"--{name}"
-                raise InputError("parameters must come with --measure", f"{option} alone", "Or let the file name it all.")
+                remedy = "Or let the file name it all."
+                raise InputError("parameters must come with --measure", f"{option} alone", remedy)
         return None
     return measure_of(args)

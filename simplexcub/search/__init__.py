@@ -15,7 +15,7 @@ from mpmath import mp, mpf
 import simplexcub
 from simplexcub.errors import InputError, NothingFound
 from simplexcub.invariants import invariant_basis
-from simplexcub.measures import Measure
+from simplexcub.measures import Dirichlet, Measure
 from simplexcub.rule import Provenance, Rule, rule_from_nodes, rule_from_orbits
 from simplexcub.search.conical import MOST_NODES, conical_count, conical_rule
 from simplexcub.search.driver import Budget, Found, Progress, Search
@@ -206,10 +206,12 @@ def _written_out(found: Found, digits: int) -> tuple[list[list[mpf]], list[mpf]]
 def _groups(measure: Measure, symmetry: str) -> list[Group]:
     """The groups to search with, each checked to leave the measure unchanged."""
     # A measure that is neither symmetric nor Dirichlet may have no symmetry at all: every component is told apart.
-    labels = (0,) * measure.N if measure.is_symmetric else getattr(measure, "alpha", tuple(range(measure.N)))
-    own = "full" if measure.is_symmetric else "alpha"
+    labels: tuple[object, ...] = (0,) * measure.N
+    if not measure.is_symmetric:
+        labels = measure.alpha if isinstance(measure, Dirichlet) else tuple(range(measure.N))
+    own = "full" if measure.is_symmetric else "alpha" if isinstance(measure, Dirichlet) else "none"
     if symmetry == "best":
-        names = _PROMISE.get(measure.N, _PROMISE_ELSE) if measure.is_symmetric else (own, "none")
+        names = _PROMISE.get(measure.N, _PROMISE_ELSE) if measure.is_symmetric else dict.fromkeys((own, "none"))
         return [named_group(name, measure.N, labels) for name in names]
     group = named_group(own if symmetry == "full" else symmetry, measure.N, labels)
     if any(labels[i] != labels[j] for g in group.generators for i, j in enumerate(g)):
