@@ -143,10 +143,19 @@ def test_bad_questions(call, message):
         call()
 
 
+def verified(rule):
+    return rule.verified(verify(rule).verification)
+
+
+def with_method(rule, method):
+    return replace(rule, provenance=replace(rule.provenance, method=method))
+
+
 def test_the_catalogue_can_be_narrowed():
     assert {(line.family, line.N) for line in catalogue("flat", N=3)} == {("flat", 3)}
-    assert len(catalogue("flat")) + len(catalogue("hilbert-schmidt")) == len(SHIPPED)
-    assert [line.degree for line in catalogue("flat", N=3, space="all")] == list(range(1, 15))
+    assert sum(len(catalogue(family)) for family in ("flat", "hilbert-schmidt", "bures")) == len(SHIPPED)
+    full = [line.degree for line in catalogue("flat", N=3, space="all") if line.symmetry == "full"]
+    assert full[:20] == list(range(1, 21))
     assert catalogue(N=77) == ()
     assert all(isinstance(line, Shipped) for line in SHIPPED)
 
@@ -234,7 +243,7 @@ def test_the_build_skips_what_is_there(tmp_path, monkeypatch):
     [
         (replace(simpson(), degree=5), "degree 5 claimed"),
         (with_negative_weight(), "not positive and inside"),
-        (replace(vertices_and_centre(), symmetry="none"), "no rule in 1 s"),
+        (with_method(vertices_and_centre(), "conical product"), "no rule in 1 s"),
     ],
     ids=["false", "negative", "fallback"],
 )
@@ -244,6 +253,15 @@ def test_the_build_refuses_what_is_not_fit_to_ship(found, message, tmp_path, mon
     assert table_build.build([(found.measure, found.degree)], where=tmp_path, budget=1, say=said.append) == []
     assert message in said[0]
     assert reindex(tmp_path) == ()
+
+
+def test_less_symmetry_is_kept_only_with_fewer_nodes(tmp_path, monkeypatch):
+    add(verified(vertices_and_centre()), tmp_path)
+    loose = replace(vertices_and_centre(), symmetry="cyclic", orbits=())
+    monkeypatch.setattr(table_build, "solve", lambda *_, **__: loose)
+    said = []
+    assert table_build.build([(loose.measure, 2)], where=tmp_path, budget=1, symmetry="best", say=said.append) == []
+    assert "no fewer than with full symmetry" in said[0]
 
 
 def test_an_interrupted_build_leaves_a_true_index(tmp_path, monkeypatch):
@@ -276,5 +294,5 @@ def test_the_build_as_a_command(tmp_path, caplog):
 
 
 def test_the_targets_are_the_promised_set():
-    assert len(list(table_build.targets())) == 2 * (21 + 14 + 8)
+    assert len(list(table_build.targets())) == 3 * (21 + 20 + 10 + 7 + 5)
     assert {measure for measure, _ in table_build.targets(["flat"], [3])} == {flat(3)}
