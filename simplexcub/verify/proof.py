@@ -18,6 +18,7 @@ from simplexcub.verify.printed import Printed, read_printed
 from simplexcub.verify.proof_newton import NotProven, find_zero
 from simplexcub.verify.proof_orbits import Structure, find_structure
 from simplexcub.verify.proof_result import Proof, conclude
+from simplexcub.verify.proof_snap import symmetrised
 from simplexcub.verify.proof_system import MonomialSystem, PowerSumSystem, System
 
 NEWTON = "Newton-Kantorovich in integers"
@@ -28,7 +29,14 @@ LONGEST_DENOMINATOR = 2000  # bits
 SPARE_DIGITS = 20
 
 
-def prove(rule: Rule, *, measure: Measure | None = None, degree: int | None = None, digits: int = 0) -> Proof:
+def prove(
+    rule: Rule,
+    *,
+    measure: Measure | None = None,
+    degree: int | None = None,
+    digits: int = 0,
+    snap: float | None = None,
+) -> Proof:
     """Prove that an exact rule lies near the printed decimals of `rule`.
 
     Parameters
@@ -41,6 +49,9 @@ def prove(rule: Rule, *, measure: Measure | None = None, degree: int | None = No
         Degree of the exact rule; by default the one that `rule` claims.
     digits : int, optional
         Decimal places wanted in the exact rule's numbers, where these are more than the printed ones.
+    snap : float, optional
+        How far the printed set may be off full symmetry to be taken for fully symmetric; by default 100 units in the
+        last place. The distance counts in the radius.
 
     Returns
     -------
@@ -68,23 +79,26 @@ def prove(rule: Rule, *, measure: Measure | None = None, degree: int | None = No
         raise InputError("space must be all or symmetric for a rule to be proven", rule.space)
     wanted = rule.degree if degree is None else degree
     printed = read_printed(rule)
-    structure = find_structure(printed, against, rule.space)
+    snapped = printed
+    if rule.space == "all" and against.is_symmetric:
+        snapped = symmetrised(printed, 100 / 10**printed.digits if snap is None else snap)
+    structure = find_structure(snapped, against, rule.space)
     equal = rule.equal_weights and len(set(printed.weights)) == 1
     method = NEWTON
     try:
         system = _system(structure, against, wanted, rule.space, equal, len(rule))
-        exact = _rational(system, printed)
+        exact = _rational(system, snapped)
         if exact is not None:
             method = RATIONAL
-            return conclude(system, printed, wanted, method, *exact, Fraction(0))
-        start = list(_printed_unknowns(system, printed))
+            return conclude(system, printed, snapped, wanted, method, exact)
+        start = list(_printed_unknowns(system, snapped))
         places = max(printed.places, printed.digits, digits) + SPARE_DIGITS
         zero = find_zero(system, start, math.ceil(places * math.log2(10)) + 64)
         one = system.factor << zero.bits
         point = system.point([v * system.factor for v in zero.x], one)
-        found = [(Fraction(w, one), [Fraction(v, one) for v in values]) for w, values in point]
-        weights = [w for w, _ in found]
-        return conclude(system, printed, wanted, method, weights, [v for _, v in found], zero.radius, zero)
+        weights = [Fraction(w, one) for w, _ in point]
+        values = [[Fraction(v, one) for v in blocks] for _, blocks in point]
+        return conclude(system, printed, snapped, wanted, method, (weights, values), zero)
     except NotProven as failure:
         return Proof(False, method, wanted, structure.group, failure.reason)
 

@@ -80,31 +80,42 @@ class Proof:
 def conclude(
     system: System,
     printed: Printed,
+    snapped: Printed,
     degree: int,
     method: str,
-    weights: list[Fraction],
-    values: list[list[Fraction]],
-    radius: Fraction,
+    exact: tuple[list[Fraction], list[list[Fraction]]],
     zero: Zero | None = None,
 ) -> Proof:
-    """Signs over the box, and the largest distance of a printed number from the exact one."""
-    farthest, units, positive = Fraction(0), 0.0, True
-    for orbit, weight, blocks in zip(system.structure.orbits, weights, values, strict=True):
-        room = radius if system.equal_weight is None else Fraction(0)
-        shown = Fraction(orbit.weight, printed.one)
-        if abs(weight) <= room or (weight > 0) != (shown > 0):
+    """Signs over the box, and the largest distance of a printed number from the exact one.
+
+    `snapped` is the set whose structure `system` has, `exact` the weight and block values of its orbits.
+
+    Raises
+    ------
+    NotProven
+        A weight of uncertain sign, or a node that may lie outside.
+    """
+    weights, values = exact
+    radius = zero.radius if zero else Fraction(0)
+    weight_room = radius if system.equal_weight is None else Fraction(0)
+    rooms = [[radius * Fraction(float(s)) for s in system.speeds(orbit)] for orbit in system.structure.orbits]
+    for orbit, weight, blocks, room in zip(system.structure.orbits, weights, values, rooms, strict=True):
+        if abs(weight) <= weight_room or (weight > 0) != (orbit.weight > 0):
             raise NotProven(f"the weight of node {orbit.first + 1} may have another sign than the printed one")
-        positive = positive and weight > 0
-        farthest = max(farthest, abs(weight - shown) + room)
-        units = max(units, _units(abs(weight - shown) + room, orbit.weight, printed))
-        for value, speed, text in zip(blocks, system.speeds(orbit), orbit.values, strict=True):
-            room = radius * Fraction(float(speed))
-            if value < room:
-                raise NotProven(f"node {orbit.first + 1} of the exact rule may lie outside")
-            off = abs(value - Fraction(text, printed.one)) + room
+        if any(v < r for v, r in zip(blocks, room, strict=True)):
+            raise NotProven(f"node {orbit.first + 1} of the exact rule may lie outside")
+    farthest, units = Fraction(0), 0.0
+    nodes, shares = [], []
+    places = _placements(system.structure, snapped)
+    for (o, blocks_of), node, shown in zip(places, printed.nodes, printed.weights, strict=True):
+        nodes.append(tuple(values[o][b] for b in blocks_of))
+        shares.append(weights[o])
+        pairs = [(shown, weights[o], weight_room)]
+        pairs += [(x, values[o][b], rooms[o][b]) for x, b in zip(node, blocks_of, strict=True)]
+        for text, value, room_here in pairs:
+            off = abs(value - Fraction(text, printed.one)) + room_here
             farthest = max(farthest, off)
             units = max(units, _units(off, text, printed))
-    nodes, shares = _written_out(system.structure, printed, weights, values)
     return Proof(
         True,
         method,
@@ -115,11 +126,11 @@ def conclude(
         contraction=round_up(zero.contraction) if zero else "0",
         equations=len(system.means),
         unknowns=len(system.unknowns),
-        fixed=tuple(_fixed(system, zero, printed)) if zero else (),
-        positive=positive,
+        fixed=tuple(_fixed(system, zero, snapped)) if zero else (),
+        positive=min(weights) > 0,
         units=units,
-        nodes=nodes,
-        weights=shares,
+        nodes=tuple(nodes),
+        weights=tuple(shares),
     )
 
 
@@ -142,35 +153,22 @@ def _fixed(system: System, zero: Zero, printed: Printed) -> Iterator[str]:
             yield f"λ{where} of node {node}"
 
 
-def _written_out(
-    structure: Structure, printed: Printed, weights: list[Fraction], values: list[list[Fraction]]
-) -> tuple[tuple[tuple[Fraction, ...], ...], tuple[Fraction, ...]]:
-    """Every node of the table, with the exact values in place of the printed ones."""
-    if structure.full and len(structure.orbits) == len(printed.nodes):
-        keys = list(range(len(structure.orbits)))
-    elif structure.full:
-        where = {tuple(sorted(printed.nodes[orbit.first])): o for o, orbit in enumerate(structure.orbits)}
-        keys = [where[tuple(sorted(node))] for node in printed.nodes]
-    else:
-        lookup = {
-            tuple(orbit.values[b] for b in image): o
-            for o, orbit in enumerate(structure.orbits)
-            for image in orbit.images
-        }
-        keys = [lookup[node] for node in printed.nodes]
-        if len(structure.orbits) == len(printed.nodes):
-            keys = list(range(len(structure.orbits)))
-    nodes, shares = [], []
-    for node, o in zip(printed.nodes, keys, strict=True):
-        orbit = structure.orbits[o]
-        if structure.full:
-            place = dict(zip(orbit.values, values[o], strict=True))
-            nodes.append(tuple(place[v] for v in node))
-        else:
-            image = next(i for i in orbit.images if tuple(orbit.values[b] for b in i) == node)
-            nodes.append(tuple(values[o][b] for b in image))
-        shares.append(weights[o])
-    return tuple(nodes), tuple(shares)
+def _placements(structure: Structure, snapped: Printed) -> list[tuple[int, tuple[int, ...]]]:
+    """The orbit of every node of the table, and the block that stands in each of its coordinates."""
+    orbits = structure.orbits
+    if structure.full:
+        found = {tuple(sorted(snapped.nodes[orbit.first])): o for o, orbit in enumerate(orbits)}
+        alone = len(orbits) == len(snapped.nodes)
+        keys = range(len(orbits)) if alone else [found[tuple(sorted(node))] for node in snapped.nodes]
+        return [
+            (o, tuple(orbits[o].values.index(v) for v in node)) for o, node in zip(keys, snapped.nodes, strict=True)
+        ]
+    if len(orbits) == len(snapped.nodes):
+        return [(o, orbit.images[0]) for o, orbit in enumerate(orbits)]
+    by_node = {
+        tuple(orbit.values[b] for b in image): (o, image) for o, orbit in enumerate(orbits) for image in orbit.images
+    }
+    return [by_node[node] for node in snapped.nodes]
 
 
 def round_up(value: Fraction) -> str:
