@@ -34,7 +34,8 @@ def add_options(parser: argparse.ArgumentParser) -> None:
     parser.add_argument("--mend", type=Path, metavar="OUT", help="write the exact rule nearby, to 50 digits, to OUT")
     parser.add_argument("--states", action="store_true", help="FILE holds state vectors: npy, or CSV of re,im columns")
     parser.add_argument("--reduce", type=whole_numbers, metavar="d1,d2", help="spectra of states reduced to a factor")
-    parser.epilog = f"--measure {ANY} tries the flat, Hilbert-Schmidt, induced, Bures and Dirichlet 1/2 measures.\n\n{parser.epilog}"
+    more = f"--measure {ANY} tries the flat, Hilbert-Schmidt, induced, Bures and Dirichlet 1/2 measures."
+    parser.epilog = f"{more}\n\n{parser.epilog}"
 
 
 def run(args: argparse.Namespace) -> int:
@@ -117,6 +118,8 @@ def _states(args: argparse.Namespace) -> int:
     else:
         rules = [moduli_rule(states), moduli_rule(states, "symmetric")]
     print(f"{'states':<9} {states.shape[0]} vectors of {states.shape[1]} components")
-    for rule in rules:
-        _report(rule, rule.measure)
-    return 0
+    reports = [_report(rule, rule.measure) for rule in rules]
+    faults = [reason for report in reports for reason in report.reasons]
+    if faults:
+        complain(f"{args.file} was not verified: {'; '.join(faults)}")
+    return 1 if faults else 0

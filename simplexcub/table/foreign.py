@@ -90,7 +90,8 @@ def foreign_rule(rows: Sequence[Sequence[str]], places: Sequence[str], where: st
         read.append(f"coordinate {measure.N} from the sum 1")
     weights = [row[-1] for row in rows]
     scale = math.factorial(measure.N - 1)
-    if scale > 1 and abs(sum(map(Decimal, weights)) * scale - 1) < WITHIN:
+    total = sum(map(Decimal, weights), Decimal(0))
+    if scale > 1 and abs(total * scale - 1) < WITHIN:
         weights = [format(_CONTEXT.multiply(Decimal(w), scale), "f") for w in weights]
         read.append(f"weights summed to the volume 1/{scale}")
     return assemble(

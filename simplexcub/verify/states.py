@@ -14,12 +14,10 @@ import csv
 import os
 from collections import Counter
 from collections.abc import Sequence
-from fractions import Fraction
 
 import numpy as np
 from numpy.typing import NDArray
 
-from simplexcub.decimals import to_decimal
 from simplexcub.errors import InputError, TableError
 from simplexcub.measures import Measure, flat, induced
 from simplexcub.rule import Provenance, Rule, Space
@@ -105,7 +103,7 @@ def reduced_rule(states: ComplexArray, d1: int, d2: int) -> Rule:
         raise InputError(f"d1,d2 must be at least 2 each with product {states.shape[1]}", f"{d1},{d2}")
     singular = np.linalg.svd(states.reshape(-1, d1, d2), compute_uv=False)
     measure = induced(min(d1, d2), max(d1, d2))
-    return _rule(measure, singular**2, "symmetric", f"spectra of states reduced from {d1} x {d2}")
+    return _rule(measure, np.asarray(singular**2, dtype=np.float64), "symmetric", f"spectra of states reduced from {d1} x {d2}")
 
 
 def _rule(measure: Measure, points: FloatArray, space: Space, method: str) -> Rule:
@@ -113,7 +111,7 @@ def _rule(measure: Measure, points: FloatArray, space: Space, method: str) -> Ru
     if space == "symmetric":
         points = -np.sort(-points, axis=1)
     counts = Counter(tuple(_text(float(x)) for x in point) for point in points)
-    weights = tuple(to_decimal(Fraction(count, len(points)), PLACES) for count in counts.values())
+    weights = tuple(_text(count / len(points)) for count in counts.values())
     return Rule(
         measure,
         0,
