@@ -103,7 +103,8 @@ def reduced_rule(states: ComplexArray, d1: int, d2: int) -> Rule:
         raise InputError(f"d1,d2 must be at least 2 each with product {states.shape[1]}", f"{d1},{d2}")
     singular = np.linalg.svd(states.reshape(-1, d1, d2), compute_uv=False)
     measure = induced(min(d1, d2), max(d1, d2))
-    return _rule(measure, np.asarray(singular**2, dtype=np.float64), "symmetric", f"spectra of states reduced from {d1} x {d2}")
+    squared = np.asarray(singular**2, dtype=np.float64)
+    return _rule(measure, squared, "symmetric", f"spectra of states reduced from {d1} x {d2}")
 
 
 def _rule(measure: Measure, points: FloatArray, space: Space, method: str) -> Rule:
