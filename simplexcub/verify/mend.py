@@ -13,13 +13,15 @@ from simplexcub.decimals import to_decimal
 from simplexcub.errors import InputError, NothingFound
 from simplexcub.measures import Measure
 from simplexcub.rule import Orbit, Provenance, Rule
-from simplexcub.symmetry import orbit_size
+from simplexcub.symmetry import distinct_permutations, orbit_size
 from simplexcub.verify.check import verify
 from simplexcub.verify.printed import read_printed
 from simplexcub.verify.proof import prove
 from simplexcub.verify.proof_orbits import find_structure
 from simplexcub.verify.proof_result import Proof
 from simplexcub.verify.proof_snap import symmetrised
+
+Node = tuple[Fraction, ...]
 
 MOST_DIGITS = 1000
 # Nodes further apart than this are no copies of each other. The smallest distance that makes a symmetric set is taken.
@@ -89,9 +91,11 @@ def _symmetric_reach(rule: Rule, measure: Measure) -> list[float]:
 def _printed_in_full(rule: Rule, measure: Measure, proof: Proof, digits: int) -> Rule:
     """`rule` with the numbers of the exact one."""
     nodes, weights = proof.nodes, proof.weights
+    orbits: tuple[Orbit, ...] = ()
     if rule.space == "symmetric":
         nodes = tuple(tuple(sorted(node, reverse=True)) for node in nodes)
-    full = proof.group == "full"
+    if proof.group == "full":
+        nodes, weights, orbits = _by_orbits(nodes, weights, digits, whole=rule.space == "symmetric")
     source = re.sub(r"\s+", " ", rule.provenance.method)
     today = datetime.datetime.now(datetime.UTC).date().isoformat()
     return Rule(
@@ -101,24 +105,32 @@ def _printed_in_full(rule: Rule, measure: Measure, proof: Proof, digits: int) ->
         tuple(to_decimal(w, digits) for w in weights),
         Provenance(f"simplexcub {__version__}", 0, today, f"mended, {source}"),
         space=rule.space,
-        symmetry="full" if full else "none",
+        symmetry="full" if orbits else "none",
         equal_weights=rule.equal_weights and len(set(weights)) == 1,
         digits=digits,
-        orbits=_orbits(nodes, weights, digits, whole=rule.space == "symmetric") if full else (),
+        orbits=orbits,
     )
 
 
-def _orbits(
-    nodes: Sequence[Sequence[Fraction]], weights: Sequence[Fraction], digits: int, *, whole: bool
-) -> tuple[Orbit, ...]:
-    """One entry for each orbit; `whole`: the weights are those of the orbits."""
-    firsts: dict[tuple[Fraction, ...], Fraction] = {}
+def _by_orbits(
+    nodes: Sequence[Node], weights: Sequence[Fraction], digits: int, *, whole: bool
+) -> tuple[tuple[Node, ...], tuple[Fraction, ...], tuple[Orbit, ...]]:
+    """The nodes orbit after orbit, their weights, and the orbits; `whole`: the weights are those of orbits."""
+    firsts: dict[Node, tuple[Node, Fraction]] = {}
     for node, weight in zip(nodes, weights, strict=True):
-        firsts.setdefault(tuple(sorted(node, reverse=True)), weight)
-    found = []
-    for node, weight in firsts.items():
-        counts = Counter(node)
-        multiplicities = tuple(counts.values())
-        total = weight if whole else weight * orbit_size(multiplicities)
-        found.append(Orbit(multiplicities, tuple(to_decimal(v, digits) for v in counts), to_decimal(total, digits)))
-    return tuple(found)
+        firsts.setdefault(tuple(sorted(node)), (node, weight))
+    if whole and len(firsts) < len(nodes):
+        return tuple(nodes), tuple(weights), ()
+    listed: list[Node] = []
+    shares: list[Fraction] = []
+    orbits: list[Orbit] = []
+    for node, weight in firsts.values():
+        values, multiplicities = zip(*Counter(node).items(), strict=True)
+        size = orbit_size(multiplicities)
+        labels = [j for j, m in enumerate(multiplicities) for _ in range(m)]
+        orderings = [tuple(labels)] if whole else list(distinct_permutations(labels))
+        listed += [tuple(values[j] for j in order) for order in orderings]
+        shares += [weight] * len(orderings)
+        total = weight if whole else weight * size
+        orbits.append(Orbit(multiplicities, tuple(to_decimal(v, digits) for v in values), to_decimal(total, digits)))
+    return tuple(listed), tuple(shares), tuple(orbits)
