@@ -119,10 +119,10 @@ def _rest(node: Sequence[str]) -> str:
 def count_components(rows: Sequence[Sequence[str]]) -> int:
     """N from the first row: all cells but the weight if these sum to 1, one more if not."""
     try:
-        total = sum((Decimal(cell) for cell in rows[0][:-1]), Decimal(0))
-    except ArithmeticError:
-        return len(rows[0]) - 1
-    return len(rows[0]) - (1 if abs(total - 1) < WITHIN else 0)
+        barycentric = abs(sum((Decimal(cell) for cell in rows[0][:-1]), Decimal(-1))) < WITHIN
+    except ArithmeticError:  # no finite numbers, which are refused later with their line
+        barycentric = True
+    return len(rows[0]) - barycentric
 
 
 def _shortened(cell: str) -> str:
