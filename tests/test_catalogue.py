@@ -273,11 +273,11 @@ def test_an_interrupted_build_leaves_a_true_index(tmp_path, monkeypatch):
 
 
 def test_verifying_again_mends_the_blocks(tmp_path):
-    true = verify(simpson()).verification
-    path = add(simpson().verified(replace(true, lower_bound=1)), tmp_path)
+    true = verify(simpson(), prove=True).verification
+    path = add(simpson().verified(replace(true, lower_bound=1, proof=None)), tmp_path)
     said = []
     table_build.refresh(tmp_path, said.append)
-    assert said == ["flat/N2/all-full-t03-3.json: holds"]
+    assert said == ["flat/N2/all-full-t03-3.json: holds, proven"]
     assert read(path).verification == true
     assert json.loads((tmp_path / "index.json").read_text())["tables"][0]["bound"] == 2
 

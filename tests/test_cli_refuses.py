@@ -131,7 +131,7 @@ def test_damaged_tables(call: Call, tmp_path: Path, kind: str, part: str, comman
         ("1,0.5,0.5\n0,1,0.5\n", "node 1 must sum to 1; got 1.5"),
         ("1.5,-0.5,0.5\n0,1,0.5\n", "at least 0; got -0.5"),
         ("1,0,nan\n0,1,0.5\n", "decimal number"),
-        ("1,0\n0,1\n", "coordinates and a weight"),
+        ("1\n1\n", "coordinates and a weight"),
     ],
 )
 def test_numbers_that_are_no_rule(call: Call, tmp_path: Path, rows: str, part: str) -> None:

@@ -174,7 +174,7 @@ def test_json_of_other_shapes(text, message):
         ("", "must hold rows of nodes and weights; got no rows"),
         ("# nothing\n\n", "got no rows"),
         ("x y w\n", "got no rows"),
-        ("0.5 0.5\n", r"line 1: a row must hold N = 2 coordinates and a weight; got 2 entries"),
+        ("0.5\n", r"line 1: a row must hold N = 2 or N - 1 coordinates and a weight; got 1 entries"),
         ("0.5 0.5 1 1\n", "got 4 entries"),
         ("0.5 0.5 0.5\n0.5,0.5\n", "line 2: a row must hold"),
         ("x y w\nx y w\n", r"line 2: x must be a decimal number"),

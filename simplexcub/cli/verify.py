@@ -3,29 +3,78 @@
 from __future__ import annotations
 
 import argparse
+from dataclasses import replace
 from pathlib import Path
 
 from simplexcub.cli.measure import add_measure, stated_measure
-from simplexcub.cli.output import ProgressLine
+from simplexcub.cli.options import whole, whole_numbers
+from simplexcub.cli.output import ProgressLine, require_writable
 from simplexcub.cli.speech import complain
-from simplexcub.table import read
+from simplexcub.errors import InputError
+from simplexcub.measures import Measure
+from simplexcub.rule import Rule
+from simplexcub.table import read, save
+from simplexcub.table.formats import format_of
+from simplexcub.table.reading import read_bare
 from simplexcub.verify import verify
+from simplexcub.verify.check import Report
+from simplexcub.verify.match import match
+from simplexcub.verify.mend import mend
+from simplexcub.verify.states import moduli_rule, read_states, reduced_rule
 
 EXAMPLE = "simplexcub verify hs.json"
+ANY = "any"
 
 
 def add_options(parser: argparse.ArgumentParser) -> None:
     """Declare the arguments of the command."""
     parser.add_argument("file", type=Path, metavar="FILE", help="a table, as JSON, CSV or text")
     add_measure(parser, option=True)
+    parser.add_argument("-t", "--degree", type=whole, metavar="DEGREE", help="degree to mend a table to")
+    parser.add_argument("--mend", type=Path, metavar="OUT", help="write the exact rule nearby, to 50 digits, to OUT")
+    parser.add_argument("--states", action="store_true", help="FILE holds state vectors: npy, or CSV of re,im columns")
+    parser.add_argument("--reduce", type=whole_numbers, metavar="d1,d2", help="spectra of states reduced to a factor")
+    more = f"--measure {ANY} tries the flat, Hilbert-Schmidt, induced, Bures and Dirichlet 1/2 measures."
+    parser.epilog = f"{more}\n\n{parser.epilog}"
 
 
 def run(args: argparse.Namespace) -> int:
-    """Check every moment of the degree and print what was found."""
-    measure = stated_measure(args)
-    rule = read(args.file, measure=measure)
+    """Check every moment of the degree, look for the proof, and print what was found."""
+    if args.mend is not None:
+        format_of(args.mend)
+        require_writable(args.mend)
+    if args.reduce is not None and not args.states:
+        raise InputError("--reduce must come with --states", "no --states")
+    if args.degree is not None and args.mend is None:
+        raise InputError("--degree must come with --mend", "no --mend")
+    if args.states:
+        return _states(args)
+    if args.measure == ANY:
+        rule = read_bare(args.file, N=args.N)
+        found = match(rule)
+        for report in found:
+            if report.exact_degree > 0:
+                print(f"{'matches':<9} {report.measure} to degree {report.exact_degree}, {report.digits} digits")
+        rule = replace(rule, measure=found[0].measure)
+        measure: Measure | None = rule.measure
+    else:
+        measure = stated_measure(args)
+        rule = read(args.file, measure=measure)
+    report = _report(rule, measure)
+    if args.mend is not None:
+        mended = mend(rule, measure=measure, degree=args.degree)
+        save(mended, args.mend)
+        print(f"{'mended':<9} degree {mended.degree}, {mended.digits} digits, written to {args.mend}")
+        return 0
+    if not report.holds:
+        complain(f"{args.file} was not verified: {'; '.join(report.reasons)}")
+        return 1
+    return 0
+
+
+def _report(rule: Rule, measure: Measure | None) -> Report:
     with ProgressLine() as show:
-        report = verify(rule, measure=measure, progress=show)
+        report = verify(rule, measure=measure, prove=True, progress=show)
     check = report.verification
     claim = f"degree {rule.degree}" if rule.degree else "no degree stated"
     worst = ",".join(str(a) for a in check.worst_exponents)
@@ -34,14 +83,43 @@ def run(args: argparse.Namespace) -> int:
         "measure": str(measure or rule.measure),
         "claim": f"{claim}, space {rule.space}, {rule.digits} digits",
         "exact": f"to degree {report.exact_degree}, {report.digits} digits; fails at degree {check.fails_at_degree}",
-        "nodes": f"{len(rule)}, at least {check.lower_bound} needed",
+        "nodes": f"{len(rule)}, at least {check.lower_bound} needed, efficiency {check.lower_bound / len(rule):.2f}",
         "moments": f"{check.moments_checked} compared, largest residual {check.max_residual} at exponents {worst}",
         "weights": "all positive" if check.positive else "not all positive",
         "inside": "all nodes on the simplex" if check.inside else "nodes off the simplex",
+        **_proof(report),
+        "origin": rule.provenance.method or "not stated",
     }
     for name, fact in facts.items():
         print(f"{name:<9} {fact}")
-    if not report.holds:
-        complain(f"{args.file} was not verified: {'; '.join(report.reasons)}")
-        return 1
-    return 0
+    return report
+
+
+def _proof(report: Report) -> dict[str, str]:
+    proof = report.proof
+    if proof is None:
+        return {"proof": "not proven: the decimals have no degree"}
+    if not proof.holds:
+        return {"symmetry": proof.group, "proof": f"not proven: {proof.reason}"}
+    told = f"proven: an exact rule lies within {proof.radius} of the printed decimals"
+    method = f"{proof.method}, degree {proof.degree}, {proof.equations} equations in {proof.unknowns} unknowns"
+    return {"symmetry": proof.group, "proof": told, "method": method}
+
+
+def _states(args: argparse.Namespace) -> int:
+    """The set of states as a rule, in both spaces where these differ."""
+    if args.measure is not None or args.mend is not None:
+        raise InputError("--states must come without --measure and --mend", "both")
+    states = read_states(args.file)
+    if args.reduce is not None:
+        if len(args.reduce) != 2:
+            raise InputError("--reduce must give two dimensions", ",".join(map(str, args.reduce)))
+        rules = [reduced_rule(states, *args.reduce)]
+    else:
+        rules = [moduli_rule(states), moduli_rule(states, "symmetric")]
+    print(f"{'states':<9} {states.shape[0]} vectors of {states.shape[1]} components")
+    reports = [_report(rule, rule.measure) for rule in rules]
+    faults = [reason for report in reports for reason in report.reasons]
+    if faults:
+        complain(f"{args.file} was not verified: {'; '.join(faults)}")
+    return 1 if faults else 0

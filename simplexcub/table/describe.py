@@ -196,7 +196,8 @@ def _checks(found: Verification | None, nodes: int) -> list[Fact]:
 def _proof(proof: dict[str, object]) -> Fact:
     method, radius = str(proof.get("method", "not stated")), str(proof.get("radius", "not stated"))
     if proof.get("holds") is not True:
-        return _fact("proof", f"none: {method} did not succeed")
+        reason = " ".join(str(proof.get("reason", f"{method} did not succeed")).split())
+        return _fact("proof", f"none: {reason}")
     text = f"an exact rule lies within {radius} of the printed numbers ({method})"
     return Fact("proof", text, escape(text).replace(escape(radius), _scientific(radius), 1))
 

@@ -3,9 +3,10 @@
 from __future__ import annotations
 
 import os
+from dataclasses import replace
 
-from simplexcub.errors import InputError
-from simplexcub.measures import Measure
+from simplexcub.errors import InputError, TableError
+from simplexcub.measures import Measure, flat
 from simplexcub.rule import Rule
 from simplexcub.table import as_csv, as_json, as_text, foreign, from_text
 from simplexcub.table.files import read_text
@@ -35,6 +36,51 @@ def read(path: str | os.PathLike[str], *, measure: Measure | None = None) -> Rul
     """
     where = os.fspath(path)
     return parse(read_text(where), where, measure)
+
+
+def read_bare(path: str | os.PathLike[str], *, N: int | None = None) -> Rule:
+    """The nodes and weights of a table with every claim put aside, to be held against one measure after another.
+
+    Parameters
+    ----------
+    path : path-like
+    N : int, optional
+        Number of components, where the file does not name a measure; by default it is taken from the rows.
+
+    Returns
+    -------
+    Rule
+        Of degree 0, for the flat measure.
+
+    Raises
+    ------
+    InputError, TableError
+        As for :func:`read`.
+    """
+    where = os.fspath(path)
+    text = read_text(where)
+    measure = None if N is None else flat(N)
+    start = text.lstrip()
+    if start.startswith(("{", "[")) or start.startswith((as_csv.MARK, as_text.MARK)):
+        try:
+            rule = parse(text, where)
+        except TableError as error:
+            if measure is None or "name its measure" not in error.rule:
+                raise
+            rule = parse(text, where, measure)
+    else:
+        rule = foreign.parse(text, where, measure, guess=True)
+    if N is not None and rule.measure.N != N:
+        raise InputError(f"{where}: N must be that of the table, {rule.measure.N}", N)
+    return replace(
+        rule,
+        measure=flat(rule.measure.N),
+        degree=0,
+        symmetry="full" if rule.space == "symmetric" else "none",
+        equal_weights=False,
+        orbits=(),
+        verification=None,
+    )
 
 
 def parse(text: str, where: str, measure: Measure | None = None) -> Rule:

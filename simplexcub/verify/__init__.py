@@ -8,8 +8,10 @@ from typing import Any
 
 from simplexcub.verify.bounds import lower_bound
 from simplexcub.verify.check import Progress, Report, verify
+from simplexcub.verify.proof import prove
+from simplexcub.verify.proof_result import Proof
 
-__all__ = ["Progress", "Report", "lower_bound", "verify"]
+__all__ = ["Progress", "Proof", "Report", "lower_bound", "prove", "verify"]
 
 
 class _Wing(ModuleType):

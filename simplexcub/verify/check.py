@@ -15,11 +15,14 @@ from simplexcub.measures import Measure
 from simplexcub.rule import Rule, Verification
 from simplexcub.verify.bounds import dimension, lower_bound
 from simplexcub.verify.printed import Printed, read_printed
+from simplexcub.verify.proof import prove as find_proof
+from simplexcub.verify.proof_result import Proof
 from simplexcub.verify.residuals import DegreeCheck, check_degree
 from simplexcub.verify.structure import claim_faults, is_invariant, is_positive, node_faults, weight_faults
 
 SHORT = 3  # decimals with no more digits than this are read as exact if they average degree 1 exactly
 FOREIGN_SLACK = 100.0  # a table that claims nothing may be wrong in its last two digits
+FARTHEST = 50.0  # units in the last place that a claimed digit may be off the exact rule that is proven
 
 
 @dataclass(frozen=True)
@@ -52,6 +55,8 @@ class Report:
         The block that stands under a printed table.
     reasons : tuple of str
         One sentence for each thing that is wrong; empty where `holds`.
+    proof : Proof or None
+        The certificate, or why there is none; None where it was not asked for or the decimals have no degree.
     """
 
     rule: Rule
@@ -61,6 +66,7 @@ class Report:
     digits: int
     verification: Verification
     reasons: tuple[str, ...]
+    proof: Proof | None = None
 
 
 def verify(
@@ -68,6 +74,7 @@ def verify(
     *,
     measure: Measure | None = None,
     max_degree: int | None = None,
+    prove: bool = False,
     progress: Callable[[Progress], None] | None = None,
 ) -> Report:
     """Hold the printed decimals of a rule against exact means.
@@ -87,6 +94,9 @@ def verify(
     max_degree : int, optional
         Highest degree to try. A rule that is still exact there is reported as failing at the next degree. By default
         degrees are tried until one fails.
+    prove : bool, optional
+        Also look for the certificate that an exact rule lies nearby. That there is none is no fault; an exact rule that
+        is off by more than the last two claimed digits is one.
     progress : callable, optional
         Called with a :class:`Progress` after each degree.
 
@@ -133,6 +143,10 @@ def verify(
     bound = lower_bound(against, judged.degree, rule.space)
     if rule.degree and len(rule) < bound:
         reasons.append(f"degree {rule.degree} claimed with {len(rule)} nodes, but no such rule has fewer than {bound}")
+    degree = rule.degree or fails_at - 1
+    proof = find_proof(rule, measure=against, degree=degree) if prove and degree > 0 else None
+    if rule.degree and proof is not None and proof.holds and proof.units > FARTHEST:
+        reasons.append(f"the nearest exact rule is {proof.radius} away, beyond the last two of the printed digits")
     verification = Verification(
         moments_checked=judged.moments_checked,
         max_residual=judged.max_residual,
@@ -141,9 +155,10 @@ def verify(
         positive=is_positive(printed),
         inside=not off_simplex,
         lower_bound=bound,
+        proof=None if proof is None else proof.record(),
     )
     digits = _agreeing(printed.digits, judged.ratio)
-    return Report(rule, against, not reasons, fails_at - 1, digits, verification, tuple(reasons))
+    return Report(rule, against, not reasons, fails_at - 1, digits, verification, tuple(reasons), proof)
 
 
 class _Trial:

@@ -1,0 +1,35 @@
+"""Which measure a bare set of nodes and weights is for: every measure of one size in turn."""
+
+from __future__ import annotations
+
+from collections.abc import Iterator
+from dataclasses import replace
+
+from simplexcub.measures import Measure, bures, dirichlet, flat, hilbert_schmidt, induced
+from simplexcub.rule import Rule
+from simplexcub.verify.check import Report, verify
+
+LARGEST_BURES = 6  # its means cost more than the others'
+
+
+def candidates(n: int) -> Iterator[Measure]:
+    """The flat measure, Hilbert–Schmidt, induced with N < K ≤ 2N, Bures, and Dirichlet with all parameters 1/2."""
+    yield flat(n)
+    yield hilbert_schmidt(n)
+    yield from (induced(n, k) for k in range(n + 1, 2 * n + 1))
+    if n <= LARGEST_BURES:
+        yield bures(n)
+    yield dirichlet(["1/2"] * n)
+
+
+def match(rule: Rule) -> list[Report]:
+    """Reports of `rule`, its claims put aside, against every candidate; the highest degree first.
+
+    Parameters
+    ----------
+    rule : Rule
+        In space ``all`` or ``symmetric``.
+    """
+    bare = replace(rule, degree=0, orbits=(), equal_weights=False)
+    found = [verify(replace(bare, measure=measure)) for measure in candidates(rule.measure.N)]
+    return sorted(found, key=lambda report: -report.exact_degree)
