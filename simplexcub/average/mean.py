@@ -20,7 +20,7 @@ from simplexcub.average.exact import exact_mean
 from simplexcub.errors import InputError, NothingFound
 from simplexcub.measures import Measure
 from simplexcub.rule import Rule
-from simplexcub.search import Progress, solve
+from simplexcub.search import Progress, product_rule, solve
 from simplexcub.table import load
 
 PRODUCT_DEGREES = (1, 3, 5, 7, 11, 15, 23, 31, 47, 63, 95, 127, 191, 255)
@@ -176,7 +176,7 @@ def _products(measure: Measure, above: int, clock: _Clock) -> Iterator[Rule]:
         if degree > above:
             clock.say(f"product rule of degree {degree}")
             try:
-                yield solve(measure, degree, symmetry="none", digits=DIGITS)
+                yield product_rule(measure, degree, digits=DIGITS)
             except NothingFound:
                 return
 

@@ -5,7 +5,6 @@ from __future__ import annotations
 import datetime
 from collections.abc import Callable
 from concurrent.futures import Executor
-from dataclasses import replace
 from pathlib import Path
 from typing import Literal
 
@@ -25,7 +24,7 @@ from simplexcub.search.system import FloatArray, Problem
 from simplexcub.search.workers import Overdue, Workers, local_workers
 from simplexcub.symmetry import Group, named_group
 
-__all__ = ["Progress", "solve"]
+__all__ = ["Progress", "product_rule", "solve"]
 
 _SPACES = ("all",)
 # Node counts measured over degrees 3 to 12: few symmetries first, since that is where the fewest nodes were found.
@@ -105,10 +104,8 @@ def solve(
     """
     _check(degree=degree, space=space, digits=digits, seed=seed, budget=budget, jobs=jobs)
     groups = _groups(measure, symmetry)
-    package = f"simplexcub {simplexcub.__version__}"
-    provenance = Provenance(package, seed, datetime.datetime.now(datetime.UTC).date().isoformat(), "Gauss")
     if measure.N == 2:
-        return gauss_rule(measure, degree, digits=digits, provenance=provenance)
+        return product_rule(measure, degree, digits=digits, seed=seed)
     record = None if resume is None else Record(resume)
     if executor is None:
         with local_workers(jobs, record) as workers:
@@ -117,8 +114,35 @@ def solve(
         workers = Workers(lambda: executor, jobs, record, owned=False)
         found = _search(groups, measure, degree, digits, seed, budget, workers, progress)
     if found is not None:
-        return _rule(found, digits, replace(provenance, method="orbit search"))
-    return conical_rule(measure, degree, digits=digits, provenance=replace(provenance, method="conical product"))
+        return _rule(found, digits, _provenance(seed, "orbit search"))
+    return product_rule(measure, degree, digits=digits, seed=seed)
+
+
+def product_rule(measure: Measure, degree: int, *, digits: int = 50, seed: int = 0) -> Rule:
+    """The rule that needs no search: the Gauss rule for N = 2, else the conical product of Gauss rules.
+
+    Parameters
+    ----------
+    measure : Measure
+    degree : int
+    digits : int
+        Significant digits of nodes and weights.
+    seed : int
+        Of the search that it stands in for; only its provenance tells it.
+
+    Raises
+    ------
+    NothingFound
+        The product would be unreasonably large.
+    """
+    if measure.N == 2:
+        return gauss_rule(measure, degree, digits=digits, provenance=_provenance(seed, "Gauss"))
+    return conical_rule(measure, degree, digits=digits, provenance=_provenance(seed, "conical product"))
+
+
+def _provenance(seed: int, method: str) -> Provenance:
+    today = datetime.datetime.now(datetime.UTC).date().isoformat()
+    return Provenance(f"simplexcub {simplexcub.__version__}", seed, today, method)
 
 
 def _search(
