@@ -129,9 +129,7 @@ def test_solve_with_an_ended_budget_offers_the_product_rule_and_says_so(call: Ca
 
 
 @pytest.mark.parametrize("arguments", [("flat", "-N", "3", "--symmetry", "none"), ("dirichlet", "--alpha", "1,2,3")])
-def test_solve_does_not_apologise_for_a_product_rule_that_was_asked_for(
-    call: Call, arguments: tuple[str, ...]
-) -> None:
+def test_solve_does_not_apologise_for_a_product_rule_that_was_asked_for(call: Call, arguments: tuple[str, ...]) -> None:
     status, out, err = call("solve", *arguments, "-t", 3, "--digits", 20)
     assert (status, err) == (0, [])
     assert value_of(out, "method") == "conical product"
