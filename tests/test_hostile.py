@@ -13,7 +13,7 @@ from hypothesis import given, settings
 from hypothesis import strategies as st
 
 from simplexcub.cli import main
-from simplexcub.errors import InputError
+from simplexcub.errors import InputError, TableError
 from simplexcub.measures import flat
 from simplexcub.table import read, save
 from simplexcub.table.as_json import checksum
@@ -86,6 +86,13 @@ def test_byte_order_marks_and_line_ends_are_harmless(marks, ends, tmp_path):
     report = verify(read(path, measure=flat(3)), prove=True)
     assert report.exact_degree == 5
     assert report.proof.holds
+
+
+def test_a_text_table_with_a_blank_lost_in_its_heading_is_refused():
+    text = TEXTS[2]
+    heading = next(line for line in text.splitlines() if line.split()[:1] == ["orbit"])
+    with pytest.raises(TableError, match="columns must be as they were written"):
+        parse(text.replace(heading, re.sub(" +", " ", heading.rstrip())), "table.txt")
 
 
 def test_a_forged_proof_with_a_valid_checksum_is_not_believed(tmp_path, capsys):
@@ -213,3 +220,11 @@ def test_a_table_that_does_not_hold_is_saved_with_its_reason(tmp_path):
     assert proof["holds"] is False
     assert proof["reason"]
     assert "not verified" in render(read(path), "text").lower()
+
+
+def test_an_absurd_claim_of_degree_costs_nothing():
+    start = time.perf_counter()
+    report = verify(replace(RULE, degree=9000), prove=True)
+    assert time.perf_counter() - start < 5
+    assert not report.holds
+    assert "more equations" in report.proof.reason

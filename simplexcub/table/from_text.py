@@ -140,6 +140,8 @@ def _pattern(text: str, where: str) -> tuple[int, ...]:
 def _entries(lines: list[str], where: str) -> list[tuple[list[str], dict[str, str]]]:
     """Leading cells and labelled decimals of every entry, from either layout."""
     header = _cells(lines[0])
+    if header[0] not in _LEADING_CELLS:
+        raise TableError(f"{where}: the columns must be as they were written", repr(lines[0].strip()), _AGAIN)
     leading = _LEADING_CELLS[header[0]]
     one_line = header[-1] in ("w", "W")
     entries: list[tuple[list[str], dict[str, str]]] = []

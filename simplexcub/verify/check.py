@@ -197,9 +197,10 @@ class _Trial:
 
         `nested`: nodes and weights sum to 1, so that agreement at the claimed degree implies it at all lower ones.
         """
-        claim = self.rule.degree
+        certain = self._certain_failure()
+        claim = min(self.rule.degree, 2 * certain + 10)  # far beyond what can be true no moments are spent
         start = claim + 1 if claim and nested and not self.fails(claim) else 0
-        end = self._certain_failure() if max_degree is None else min(max_degree + 1, self._certain_failure())
+        end = certain if max_degree is None else min(max_degree + 1, certain)
         fails_at = start
         while fails_at < end and not self.fails(fails_at):
             fails_at += 1

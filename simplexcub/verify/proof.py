@@ -111,6 +111,8 @@ def _system(structure: Structure, measure: Measure, degree: int, space: Space, e
     else:
         size = -(-math.comb(degree + n - 1, n - 1) // len(structure.permutations))
         terms = size * nodes * n
+    if size > nodes * n:
+        raise NotProven(f"there are more equations ({size}) than unknowns")
     if size > MOST_EQUATIONS or terms > MOST_TERMS:
         raise NotProven(f"its {size} equations are too many to be proven here")
     kind = PowerSumSystem if structure.full else MonomialSystem
