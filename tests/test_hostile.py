@@ -6,7 +6,6 @@ import random
 import re
 import time
 from dataclasses import replace
-from pathlib import Path
 
 import pytest
 from hypothesis import given, settings
@@ -19,9 +18,10 @@ from simplexcub.table import read, save
 from simplexcub.table.as_json import checksum
 from simplexcub.table.formats import render
 from simplexcub.table.reading import parse
+from simplexcub.table.shipped import folder
 from simplexcub.verify import prove, verify
 
-TABLES = Path(__file__).parent.parent / "tables"
+TABLES = folder()
 RADON = TABLES / "flat/N3/all-full-t05-7.json"
 RULE = read(RADON)
 TEXTS = [render(RULE, to) for to in ("json", "csv", "text")]

@@ -2,7 +2,6 @@
 
 from dataclasses import replace
 from decimal import Decimal
-from pathlib import Path
 
 import pytest
 
@@ -12,11 +11,12 @@ from simplexcub.measures import dirichlet, flat, hilbert_schmidt, induced
 from simplexcub.table import read, save
 from simplexcub.table.foreign import count_components
 from simplexcub.table.reading import parse, read_bare
+from simplexcub.table.shipped import folder
 from simplexcub.verify import verify
 from simplexcub.verify.match import candidates, match
 from simplexcub.verify.mend import mend
 
-TABLES = Path(__file__).parent.parent / "tables"
+TABLES = folder()
 # J. Radon (1948), seven nodes, degree 5: two coordinates to 15 digits, weights with sum 1/2.
 RADON = """0.333333333333333,0.333333333333333,0.1125
 0.470142064105115,0.470142064105115,0.0661970763942531

@@ -4,7 +4,6 @@ import math
 from dataclasses import replace
 from decimal import Decimal
 from fractions import Fraction
-from pathlib import Path
 
 import numpy as np
 import pytest
@@ -17,6 +16,7 @@ from simplexcub.rule import Provenance, Rule, rule_from_orbits
 from simplexcub.table import read
 from simplexcub.table.formats import render
 from simplexcub.table.reading import parse
+from simplexcub.table.shipped import folder
 from simplexcub.verify import prove, verify
 from simplexcub.verify.printed import read_printed
 from simplexcub.verify.proof_newton import NotProven, choose_unknowns, invert
@@ -26,7 +26,7 @@ from simplexcub.verify.proof_snap import symmetrised
 from simplexcub.verify.proof_system import MonomialSystem, PowerSumSystem
 
 BY_HAND = Provenance("none", 0, "2026-01-01", "typed in")
-TABLES = Path(__file__).parent.parent / "tables"
+TABLES = folder()
 
 
 def table(name):

@@ -67,7 +67,7 @@ def run(args: argparse.Namespace) -> int:
         require_writable(args.output)
     with InterruptNoted() as interrupted, ProgressLine() as show:
         rule = _solved(args, measure, show)
-        report = verify(rule, progress=show)
+        report = verify(rule, prove=True, progress=show)
     rule = rule.verified(report.verification)
     if rule.provenance.method == "conical product":
         complain(
