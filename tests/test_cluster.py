@@ -42,11 +42,20 @@ def search(**options):
     return sc.solve(sc.hilbert_schmidt(3), 5, symmetry="cyclic", digits=20, budget=600.0, **options)
 
 
-def test_the_same_rule_whoever_searches(client):
-    assert search(executor=client.get_executor(), jobs=2) == search()
+@pytest.fixture(scope="module")
+def alone():
+    """The rule of a search in this process."""
+    with pytest.MonkeyPatch.context() as patch:
+        for name, value in PLAN.items():
+            patch.setattr(driver, name, value)
+        return search()
 
 
-def test_a_worker_killed_in_mid_search_loses_nothing(client):
+def test_the_same_rule_whoever_searches(client, alone):
+    assert search(executor=client.get_executor(), jobs=2) == alone
+
+
+def test_a_worker_killed_in_mid_search_loses_nothing(client, alone):
     seen = []
     victim, survivor = client.run(os.getpid).values()
 
@@ -55,7 +64,6 @@ def test_a_worker_killed_in_mid_search_loses_nothing(client):
         if len(seen) == 5:
             os.kill(victim, signal.SIGKILL)
 
-    alone = search()
     assert search(executor=client.get_executor(), jobs=2, progress=strike) == alone
     assert len(seen) > 5
     left = set(client.run(os.getpid).values())

@@ -139,9 +139,7 @@ def test_nothing_is_waited_for_beyond_the_budget():
     assert time.monotonic() - begin < 30
 
 
-def test_what_was_found_before_the_workers_went_silent_is_kept(alone):
-    found = search(executor=Silent(10**6))
-    assert found == alone
+def test_what_was_found_before_the_workers_went_silent_is_kept():
     seen = []
     kept = search(executor=Silent(6), budget=5.0, progress=seen.append)
     assert kept.provenance.method == "orbit search"
