@@ -11,7 +11,7 @@ import simplexcub as sc
 from simplexcub.search import driver
 
 PLAN = {"WALKS": (2,), "ABREAST": 2, "CHUNKS": (12,), "STRUCTURES": (4,), "AGREE": (10**9,)}
-COMMAND = ("solve", "hilbert-schmidt", "-N", 3, "-t", 5, "--symmetry", "cyclic", "--digits", 20, "--budget", "10m")
+COMMAND = ("solve", "hilbert-schmidt", "-N", 3, "-t", 3, "--symmetry", "cyclic", "--digits", 20, "--budget", "10m")
 
 
 @pytest.fixture(autouse=True)
@@ -39,7 +39,7 @@ def client(cluster):
 
 
 def search(**options):
-    return sc.solve(sc.hilbert_schmidt(3), 5, symmetry="cyclic", digits=20, budget=600.0, **options)
+    return sc.solve(sc.hilbert_schmidt(3), 3, symmetry="cyclic", digits=20, budget=600.0, **options)
 
 
 @pytest.fixture(scope="module")

@@ -248,7 +248,6 @@ def test_budget_ends_the_search():
 
 
 def test_interrupt_keeps_the_best_rule():
-    # The first rule of a walk has more nodes than the mark: what was there when the interrupt came is kept.
     rule = search(sc.hilbert_schmidt(3), 10, 10**6)
     assert_good(rule)
 
