@@ -15,6 +15,7 @@ from simplexcub.table.shipped import folder
 from simplexcub.verify import verify
 from simplexcub.verify.match import candidates, match
 from simplexcub.verify.mend import mend
+from simplexcub.verify.misprint import corrected
 
 TABLES = folder()
 # J. Radon (1948), seven nodes, degree 5: two coordinates to 15 digits, weights with sum 1/2.
@@ -165,3 +166,39 @@ def test_a_mended_table_reads_back(radon, tmp_path):
         path = tmp_path / f"mended{ending}"
         save(mended, path)
         assert read(path) == mended
+
+
+@pytest.mark.parametrize("ending", [".json", ".csv"])
+@pytest.mark.parametrize(
+    ("name", "place"),
+    [
+        ("flat/N3/all-stabiliser-t03-4", 3),
+        ("flat/N3/all-stabiliser-t03-4", 30),
+        ("hilbert-schmidt/N3/all-full-t05-9", 5),
+    ],
+)
+def test_a_saved_table_with_one_wrong_digit_is_refused_and_restored(name, place, ending, tmp_path, capsys):
+    known = read(TABLES / f"{name}.json")
+    damaged, out = tmp_path / f"damaged{ending}", tmp_path / "restored.json"
+    save(known, damaged)
+    text = damaged.read_text(encoding="utf-8")
+    number = known.node_decimals[1][0]
+    wrong = number[:place] + str((int(number[place]) + 4) % 10) + number[place + 1 :]
+    before, after = text.rsplit(number, 1)
+    damaged.write_text(before + wrong + after, encoding="utf-8")
+    assert main(["verify", str(damaged)]) in (1, 2)
+    assert main(["verify", str(damaged), "--mend", str(out)]) == 0
+    assert "damaged" in capsys.readouterr().err
+    restored = read(out)
+    assert sorted(restored.node_decimals) == sorted(known.node_decimals)
+    assert sorted(restored.weight_decimals) == sorted(known.weight_decimals)
+    assert restored.verification.proof["holds"]
+
+
+def test_one_wrong_digit_of_a_weight_is_found_by_the_sum():
+    known = read(TABLES / "flat/N3/all-stabiliser-t03-4.json")
+    weights = list(known.weight_decimals)
+    weights[2] = weights[2][:2] + str((int(weights[2][2]) + 5) % 10) + weights[2][3:]
+    assert corrected(replace(known, weight_decimals=tuple(weights)), flat(3), 3) == known
+    assert corrected(replace(known, weight_decimals=tuple(weights)), hilbert_schmidt(3), 3) is None
+    assert corrected(known, flat(3), 3) is None  # nothing is wrong with any sum

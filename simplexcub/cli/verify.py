@@ -10,7 +10,7 @@ from simplexcub.cli.measure import add_measure, stated_measure
 from simplexcub.cli.options import whole, whole_numbers
 from simplexcub.cli.output import ProgressLine, require_writable
 from simplexcub.cli.speech import complain
-from simplexcub.errors import InputError
+from simplexcub.errors import InputError, TableError
 from simplexcub.measures import Measure
 from simplexcub.rule import Rule
 from simplexcub.table import read, save
@@ -59,7 +59,7 @@ def run(args: argparse.Namespace) -> int:
         measure: Measure | None = rule.measure
     else:
         measure = stated_measure(args)
-        rule = read(args.file, measure=measure)
+        rule = _read(args, measure)
     report = _report(rule, measure)
     if args.mend is not None:
         mended = mend(rule, measure=measure, degree=args.degree)
@@ -70,6 +70,18 @@ def run(args: argparse.Namespace) -> int:
         complain(f"{args.file} was not verified: {'; '.join(report.reasons)}")
         return 1
     return 0
+
+
+def _read(args: argparse.Namespace, measure: Measure | None) -> Rule:
+    """The table; one that contradicts itself only where it is to be mended, and then the user is told."""
+    try:
+        return read(args.file, measure=measure)
+    except TableError as error:
+        if args.mend is None:
+            raise
+        rule = read(args.file, measure=measure, damaged=True)
+        complain(str(error))
+        return rule
 
 
 def _report(rule: Rule, measure: Measure | None) -> Report:

@@ -34,7 +34,7 @@ def checksum(record: Mapping[str, Any]) -> str:
     return hashlib.sha256(text.encode("utf-8")).hexdigest()
 
 
-def parse(text: str, where: str, measure: Measure | None = None) -> Rule:
+def parse(text: str, where: str, measure: Measure | None = None, *, damaged: bool = False) -> Rule:
     """The rule in a JSON text: our own form, or any object with ``nodes`` and ``weights``.
 
     Parameters
@@ -43,6 +43,8 @@ def parse(text: str, where: str, measure: Measure | None = None) -> Rule:
         The text, and the name of its file for messages.
     measure : Measure, optional
         What a table that does not name its measure is for.
+    damaged : bool, optional
+        Read on where the checksum is missing or wrong.
 
     Raises
     ------
@@ -57,7 +59,13 @@ def parse(text: str, where: str, measure: Measure | None = None) -> Rule:
     version = record.get("version")
     if version != VERSION or isinstance(version, bool):
         raise TableError(f"{where}: version must be {VERSION}", repr(version), "A newer simplexcub may read it.")
-    remedy = "Take an unchanged copy; to edit numbers export the table as CSV, which has no checksum."
+    if not damaged:
+        _check_checksum(record, where)
+    return from_record({k: v for k, v in record.items() if k not in ("format", "version", "sha256")}, where)
+
+
+def _check_checksum(record: Mapping[str, Any], where: str) -> None:
+    remedy = "Take an unchanged copy, or mend this one; to edit numbers export it as CSV, which has no checksum."
     if "sha256" not in record:
         raise TableError(f"{where}: a table must carry its sha256", "none", remedy)
     try:
@@ -66,7 +74,6 @@ def parse(text: str, where: str, measure: Measure | None = None) -> Rule:
         raise TableError(f"{where}: text must be Unicode", "an unpaired surrogate", remedy) from None
     if record["sha256"] != found:
         raise TableError(f"{where}: sha256 must match the content, {found[:12]}…", repr(record["sha256"])[:15], remedy)
-    return from_record({k: v for k, v in record.items() if k not in ("format", "version", "sha256")}, where)
 
 
 def _load(text: str, where: str) -> dict[str, Any]:

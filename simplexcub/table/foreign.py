@@ -16,7 +16,6 @@ from simplexcub.decimals import most_digits
 from simplexcub.errors import TableError
 from simplexcub.measures import Measure, flat
 from simplexcub.rule import Provenance, Rule
-from simplexcub.table.record import assemble
 from simplexcub.table.sanity import LONGEST_NUMBER, check_number
 
 _COMMENT = ("#", "%", "!", "//")
@@ -94,17 +93,14 @@ def foreign_rule(rows: Sequence[Sequence[str]], places: Sequence[str], where: st
     if scale > 1 and abs(total * scale - 1) < WITHIN:
         weights = [format(_CONTEXT.multiply(Decimal(w), scale), "f") for w in weights]
         read.append(f"weights summed to the volume 1/{scale}")
-    return assemble(
-        Rule(
-            measure,
-            0,
-            tuple(nodes),
-            tuple(weights),
-            Provenance("not stated", 0, "undated", ", ".join(read)),
-            symmetry="none",
-            digits=digits,
-        ),
-        where,
+    return Rule(
+        measure,
+        0,
+        tuple(nodes),
+        tuple(weights),
+        Provenance("not stated", 0, "undated", ", ".join(read)),
+        symmetry="none",
+        digits=digits,
     )
 
 

@@ -11,7 +11,7 @@ from simplexcub.rule import Orbit, Provenance, Rule
 from simplexcub.table.as_text import NONE
 from simplexcub.table.describe import EXACT_FOR
 from simplexcub.table.orbits import count_nodes, expand
-from simplexcub.table.record import assemble, check_head, measure_from
+from simplexcub.table.record import check_head, measure_from
 from simplexcub.table.sanity import check_number
 from simplexcub.table.sheet import multiplicities
 
@@ -61,7 +61,7 @@ def parse(text: str, where: str) -> Rule:
         raise TableError(f"{where}: there must be {count} nodes", len(nodes), f"It may be cut short. {_AGAIN}")
     if any(len(node) != measure.N for node in nodes):
         raise TableError(f"{where}: every node must have {measure.N} coordinates", "another number", _AGAIN)
-    rule = Rule(
+    return Rule(
         measure,
         node_decimals=tuple(nodes),
         weight_decimals=tuple(weights),
@@ -69,7 +69,6 @@ def parse(text: str, where: str) -> Rule:
         orbits=tuple(orbits),
         **head,
     )
-    return assemble(rule, where)
 
 
 def _facts(lines: Iterable[str]) -> dict[str, str]:

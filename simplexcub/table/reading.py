@@ -10,9 +10,10 @@ from simplexcub.measures import Measure, flat
 from simplexcub.rule import Rule
 from simplexcub.table import as_csv, as_json, as_text, foreign, from_text
 from simplexcub.table.files import read_text
+from simplexcub.table.record import check_rule
 
 
-def read(path: str | os.PathLike[str], *, measure: Measure | None = None) -> Rule:
+def read(path: str | os.PathLike[str], *, measure: Measure | None = None, damaged: bool = False) -> Rule:
     """Read a table in JSON, CSV or text; the content decides which, not the name.
 
     Parameters
@@ -21,6 +22,9 @@ def read(path: str | os.PathLike[str], *, measure: Measure | None = None) -> Rul
     measure : Measure, optional
         What the rule is for, where the file does not say: rows of N coordinates and a weight, or a JSON object with
         ``nodes`` and ``weights``. Such a rule has degree 0, since nothing is claimed for it.
+    damaged : bool, optional
+        Read on where the checksum is wrong, nodes or weights do not sum to 1, or orbits are not those of the nodes, so
+        that the numbers can be mended. The rule then has no orbits and no verification.
 
     Returns
     -------
@@ -35,7 +39,7 @@ def read(path: str | os.PathLike[str], *, measure: Measure | None = None) -> Rul
         It is not a table: damaged, cut short, changed, off the simplex.
     """
     where = os.fspath(path)
-    return parse(read_text(where), where, measure)
+    return parse(read_text(where), where, measure, damaged=damaged)
 
 
 def read_bare(path: str | os.PathLike[str], *, N: int | None = None) -> Rule:
@@ -70,6 +74,7 @@ def read_bare(path: str | os.PathLike[str], *, N: int | None = None) -> Rule:
             rule = parse(text, where, measure)
     else:
         rule = foreign.parse(text, where, measure, guess=True)
+        check_rule(rule, where)
     if N is not None and rule.measure.N != N:
         raise InputError(f"{where}: N must be that of the table, {rule.measure.N}", N)
     return replace(
@@ -83,11 +88,11 @@ def read_bare(path: str | os.PathLike[str], *, N: int | None = None) -> Rule:
     )
 
 
-def parse(text: str, where: str, measure: Measure | None = None) -> Rule:
+def parse(text: str, where: str, measure: Measure | None = None, *, damaged: bool = False) -> Rule:
     """`read` for a text at hand; `where` names it in messages."""
     start = text.lstrip()
     if start.startswith(("{", "[")):
-        rule = as_json.parse(text, where, measure)
+        rule = as_json.parse(text, where, measure, damaged=damaged)
     elif start.startswith(as_csv.MARK):
         rule = as_csv.parse(start, where)
     elif start.startswith(as_text.MARK):
@@ -97,4 +102,7 @@ def parse(text: str, where: str, measure: Measure | None = None) -> Rule:
     if measure is not None and rule.measure != measure:
         remedy = "Leave the measure out, or verify the bare nodes and weights against it."
         raise InputError(f"{where}: measure must be the table's own, {rule.measure}", measure, remedy)
+    if damaged:
+        return replace(rule, orbits=(), verification=None)
+    check_rule(rule, where)
     return rule

@@ -77,8 +77,7 @@ def from_record(record: Mapping[str, Any], where: str) -> Rule:
     Raises
     ------
     TableError
-        A key missing, unknown or of the wrong type; a number that is none; orbits that contradict the nodes; weights
-        or nodes off the simplex.
+        A key missing, unknown or of the wrong type; a number that is none.
     """
     check_keys(record, _RULE, where, optional={"orbits": list})
     measure = measure_from(record["measure"], where)
@@ -88,31 +87,28 @@ def from_record(record: Mapping[str, Any], where: str) -> Rule:
     orbits = tuple(_orbit(item, measure, f"{where}: orbits[{k}]") for k, item in enumerate(record.get("orbits", ())))
     provenance = record["provenance"]
     check_keys(provenance, _PROVENANCE, f"{where}: provenance")
-    return assemble(
-        Rule(
-            measure,
-            node_decimals=nodes,
-            weight_decimals=weights,
-            provenance=Provenance(**provenance),
-            orbits=orbits,
-            verification=verification_from(record["verification"], f"{where}: verification"),
-            **head,
-        )
-        if nodes
-        else None,
-        where,
+    if not nodes:
+        raise TableError(f"{where}: a table must have at least one node", 0)
+    return Rule(
+        measure,
+        node_decimals=nodes,
+        weight_decimals=weights,
+        provenance=Provenance(**provenance),
+        orbits=orbits,
+        verification=verification_from(record["verification"], f"{where}: verification"),
+        **head,
     )
 
 
-def assemble(rule: Rule | None, where: str) -> Rule:
-    """`rule`, once its numbers have passed; None stands for a table without nodes.
+def check_rule(rule: Rule, where: str) -> None:
+    """Refuse numbers that contradict each other, as wrong digits and changes by hand make them do.
 
     Raises
     ------
     TableError
+        Weights or nodes off the simplex, weights that differ where they are said to be equal, or orbits that do not
+        expand to the nodes.
     """
-    if rule is None:
-        raise TableError(f"{where}: a table must have at least one node", 0)
     check_simplex(rule.node_decimals, rule.weight_decimals, rule.digits, where)
     if rule.equal_weights and len(set(rule.weight_decimals)) > 1:
         raise TableError(f"{where}: weights must be equal where equal_weights is true", "weights that differ")
@@ -124,7 +120,6 @@ def assemble(rule: Rule | None, where: str) -> Rule:
             raise TableError(
                 f"{where}: orbits must expand to the nodes", "others", "Take an unchanged copy of the table."
             )
-    return rule
 
 
 def check_head(record: Mapping[str, Any], where: str) -> dict[str, Any]:

@@ -15,6 +15,7 @@ from simplexcub.measures import Measure
 from simplexcub.rule import Orbit, Provenance, Rule
 from simplexcub.symmetry import distinct_permutations, orbit_size
 from simplexcub.verify.check import verify
+from simplexcub.verify.misprint import corrected
 from simplexcub.verify.printed import read_printed
 from simplexcub.verify.proof import prove
 from simplexcub.verify.proof_orbits import find_structure
@@ -31,8 +32,8 @@ REACHES = (0.0, 1e-15, 1e-12, 1e-9, 1e-6, 1e-4, 1e-3, 1e-2, 3e-2)
 def mend(rule: Rule, *, measure: Measure | None = None, degree: int | None = None, digits: int = 50) -> Rule:
     """The exact rule nearest to the printed decimals, to `digits` digits, verified and proven.
 
-    Newton's iteration leads from the printed decimals to the rule that the certificate is about. Where a fully
-    symmetric table has wrong digits, their copies outvote them first.
+    Newton's iteration leads from the printed decimals to the rule that the certificate is about. A single
+    wrong digit is set right before; where a fully symmetric table has several, their copies outvote them.
 
     Parameters
     ----------
@@ -63,6 +64,7 @@ def mend(rule: Rule, *, measure: Measure | None = None, degree: int | None = Non
     wanted = degree or rule.degree or verify(rule, measure=against).exact_degree
     if wanted < 1:
         raise NothingFound("exact rule", "the decimals do not even average degree 1", "State the degree.")
+    rule = corrected(rule, against, wanted) or rule
     reasons: list[str] = []
     for snap in (*_symmetric_reach(rule, against), None):
         proof = prove(rule, measure=against, degree=wanted, digits=digits, snap=snap)
