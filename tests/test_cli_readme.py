@@ -33,6 +33,12 @@ def sessions() -> list[tuple[str, list[str]]]:
     return found
 
 
+def write_files(folder: Path) -> None:
+    """The files that the README shows, under the names that stand behind their fences."""
+    for name, text in re.findall(r"^```text (\S+)\n(.*?)^```", README.read_text(encoding="utf-8"), re.M | re.S):
+        (folder / name).write_text(text, encoding="utf-8")
+
+
 def steady(line: str) -> str:
     """The line without what varies from run to run or from machine to machine."""
     for pattern, replacement in VARYING:
@@ -44,6 +50,7 @@ def test_every_command_prints_what_the_readme_shows(
     call: Call, tmp_path: Path, monkeypatch: pytest.MonkeyPatch
 ) -> None:
     monkeypatch.chdir(tmp_path)
+    write_files(tmp_path)
     shown = sessions()
     assert {command.split()[1] for command, _ in shown} == {"moments", "solve", "verify", "export", "average", "tables"}
     for command, expected in shown:

@@ -28,7 +28,7 @@ log = logging.getLogger(__name__)
 
 DIGITS = 50
 # Degrees per number of components. A Gauss rule (N = 2) has odd degree.
-DEGREES = {2: range(1, 42, 2), 3: range(1, 21), 4: range(1, 11), 5: range(1, 8), 6: range(1, 6)}
+DEGREES = {2: range(1, 42, 2), 3: range(1, 31), 4: range(1, 15), 5: range(1, 9), 6: range(1, 8)}
 
 
 def targets(
