@@ -19,9 +19,10 @@ from simplexcub.rule import Provenance, Rule, rule_from_nodes, rule_from_orbits
 from simplexcub.search.conical import MOST_NODES, conical_count, conical_rule
 from simplexcub.search.driver import Budget, Found, Progress, Search
 from simplexcub.search.gauss import gauss_rule
+from simplexcub.search.levenberg import Overdue
 from simplexcub.search.record import Record
 from simplexcub.search.system import FloatArray, Problem
-from simplexcub.search.workers import Overdue, Workers, local_workers
+from simplexcub.search.workers import Workers, local_workers
 from simplexcub.symmetry import Group, named_group
 
 __all__ = ["Progress", "product_rule", "solve"]

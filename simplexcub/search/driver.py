@@ -17,6 +17,7 @@ from itertools import takewhile
 
 from simplexcub.search.counts import Counts, fewest_nodes, node_count, possible_counts
 from simplexcub.search.eliminate import Walk, set_out_from
+from simplexcub.search.levenberg import Overdue
 from simplexcub.search.refine import Orbits, refine
 from simplexcub.search.system import FloatArray, Problem, System
 from simplexcub.search.tasks import Chunk, Leg, describe
@@ -130,11 +131,29 @@ class Search:
         """Run walks side by side, a leg of each in turn."""
         walks: dict[int, Walk | None] = dict.fromkeys(numbers, begin)
         origin = "" if begin is None else hashlib.sha256(begin.pool.tobytes()).hexdigest()
+        try:
+            self._legs(walks, origin)
+        finally:
+            # Where the time is up before a walk has ended, its last level is better than nothing.
+            for walk in walks.values():
+                if walk is None or walk is begin or not walk.counts or self.best is not None:
+                    continue
+                if node_count(walk.counts) <= self._most():
+                    self._take(walk.counts, walk.pool)
+
+    def _legs(self, walks: dict[int, Walk | None], origin: str) -> None:
+        """Legs of all walks in turn until each has ended, and is taken out, or the budget ends."""
         leg = 0
         while walks and not self.budget.spent:
             legs = [Leg(self.problem, self.seed, number, leg, walk, origin) for number, walk in walks.items()]
-            results = list(self.workers.run_all(legs))
-            for number, walk in zip(list(walks), results, strict=True):
+            results = self.workers.run_all(legs)
+            for number in list(walks):
+                try:
+                    walk = next(results)
+                except Overdue as late:
+                    if isinstance(late.partial, Walk):
+                        walks[number] = late.partial
+                    raise
                 self._report(f"walk {number + 1} at {describe(walk.counts)}" if walk.counts else "no start for a walk")
                 if walk.ended:
                     del walks[number]

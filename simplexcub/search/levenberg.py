@@ -8,6 +8,12 @@ References: K. Levenberg, Q. Appl. Math. 2 (1944) 164; D. W. Marquardt, SIAM J. 
 
 from __future__ import annotations
 
+import math
+import time
+from collections.abc import Iterator
+from contextlib import contextmanager
+from contextvars import ContextVar
+
 import numpy as np
 from numpy.typing import NDArray
 
@@ -17,6 +23,26 @@ FloatArray = NDArray[np.float64]
 
 _SOLVED = 1e-12  # norm of residuals at which a candidate counts as solved,
 _SOLVED_NOISE = 20.0  # or so many times the error of the functions themselves
+
+_DEADLINE: ContextVar[float] = ContextVar("deadline", default=math.inf)
+
+
+class Overdue(Exception):
+    """The time was up before a result was there; `partial` is what the task had by then, if anything."""
+
+    def __init__(self, partial: object = None) -> None:
+        super().__init__(partial)
+        self.partial = partial
+
+
+@contextmanager
+def until(deadline: float) -> Iterator[None]:
+    """Within this block batches give up with `Overdue` at `deadline`, by ``time.monotonic()``."""
+    token = _DEADLINE.set(deadline)
+    try:
+        yield
+    finally:
+        _DEADLINE.reset(token)
 
 
 def solve_batch(
@@ -34,6 +60,11 @@ def solve_batch(
         Share of itself that every weight and coordinate keeps in one step.
     enough : int, optional
         Return as soon as so many candidates have solved the equations.
+
+    Raises
+    ------
+    Overdue
+        The deadline set by `until` came first.
     """
     residual, jacobian = system.evaluate(u)
     cost = np.einsum("be,be->b", residual, residual)
@@ -42,6 +73,8 @@ def solve_batch(
     best_before = cost.copy()
     solved: list[FloatArray] = []
     for iteration in range(1, iterations + 1):
+        if time.monotonic() > _DEADLINE.get():
+            raise Overdue
         scale = system.scale(u)
         step = scale * _damped_step(residual, jacobian * scale[:, None, :], damping * np.minimum(cost, 1.0) ** 0.5)
         slack = system.slack(u)

@@ -12,7 +12,7 @@ import numpy as np
 
 from simplexcub.search.counts import Counts, node_count
 from simplexcub.search.eliminate import Walk, advance, set_out
-from simplexcub.search.levenberg import solve_batch
+from simplexcub.search.levenberg import Overdue, solve_batch
 from simplexcub.search.system import FloatArray, Problem, System
 
 _CHUNK_STARTS, _CHUNK_NUMBERS = 200, 4_000_000  # starts per chunk, fewer where their Jacobians hold more numbers
@@ -68,7 +68,10 @@ class Leg:
         for _ in range(max(1, _LEG_NUMBERS // len(self.problem.basis) ** 2)):
             if walk.ended:
                 break
-            walk = advance(self.problem, walk, rng)
+            try:
+                walk = advance(self.problem, walk, rng)
+            except Overdue:
+                raise Overdue(walk) from None
         return walk
 
 

@@ -20,6 +20,7 @@ from multiprocessing.connection import Connection
 from threading import Thread
 from typing import Any, TypeVar
 
+from simplexcub.search.levenberg import Overdue, until
 from simplexcub.search.record import Record
 from simplexcub.search.tasks import Chunk, Leg, run_task
 
@@ -30,18 +31,14 @@ _RETRIES = 3
 _THREADS = ("OMP_NUM_THREADS", "OPENBLAS_NUM_THREADS", "MKL_NUM_THREADS")
 
 
-class Overdue(Exception):
-    """The time was up while the result of a task was waited for."""
-
-
 class Workers:
     """Runs tasks and gives their results in the order asked.
 
     Attributes
     ----------
     deadline : float
-        By ``time.monotonic()``; no result of an executor is waited for beyond it. A cluster whose last worker is gone
-        would else be waited for without end.
+        By ``time.monotonic()``; no result is waited for beyond it. A cluster whose last worker is gone would else be
+        waited for without end.
 
     Parameters
     ----------
@@ -143,7 +140,8 @@ class Workers:
                 if not _is_loss(error):
                     raise
                 future = self._submit(task)
-        return run_task(task)
+        with until(self.deadline):
+            return run_task(task)
 
     def _drop(self, future: Future[Any]) -> None:
         """Let go of a task that may be running; in processes of our own it would be in the way of the next search."""

@@ -25,6 +25,7 @@ NEWTON = "Newton-Kantorovich in integers"
 RATIONAL = "rational arithmetic"
 MOST_EQUATIONS = 500
 MOST_TERMS = 4_000_000  # equations × nodes × components
+MOST_WORK = 100_000_000  # equations² × unknowns, steps of the elimination in long integers: about a minute
 LONGEST_DENOMINATOR = 2000  # bits
 SPARE_DIGITS = 20
 
@@ -113,8 +114,8 @@ def _system(structure: Structure, measure: Measure, degree: int, space: Space, e
         terms = size * nodes * n
     if size > nodes * n:
         raise NotProven(f"there are more equations ({size}) than unknowns")
-    if size > MOST_EQUATIONS or terms > MOST_TERMS:
-        raise NotProven(f"its {size} equations are too many to be proven here")
+    if size > MOST_EQUATIONS or terms > MOST_TERMS or size * terms > MOST_WORK:
+        raise NotProven(f"its {size} equations with {nodes} nodes are too many to be proven here")
     kind = PowerSumSystem if structure.full else MonomialSystem
     return kind(structure, measure, degree, space, equal, nodes)
 
