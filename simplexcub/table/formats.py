@@ -9,7 +9,18 @@ from types import MappingProxyType
 
 from simplexcub.errors import InputError
 from simplexcub.rule import Rule
-from simplexcub.table import as_csv, as_json, as_latex, as_markdown, as_npz, as_python, as_text
+from simplexcub.table import (
+    appendix,
+    as_c,
+    as_csv,
+    as_fortran,
+    as_json,
+    as_latex,
+    as_markdown,
+    as_npz,
+    as_python,
+    as_text,
+)
 from simplexcub.table.files import write_atomically
 from simplexcub.verify import verify
 
@@ -41,6 +52,8 @@ FORMATS: Mapping[str, Format] = MappingProxyType(
         "latex": Format((".tex",), as_latex.export),
         "npz": Format((".npz",), as_npz.export, binary=True),
         "python": Format((".py",), as_python.export),
+        "c": Format((".c", ".h"), as_c.export),
+        "fortran": Format((".f90",), as_fortran.export),
     }
 )
 
