@@ -63,17 +63,18 @@ def _document(body: list[str], rules: Sequence[Rule]) -> list[str]:
 
 def _introduction(rules: Sequence[Rule]) -> Iterator[str]:
     yield (
-        r"A rule of degree~$t$ consists of nodes $\lambda^{(k)}$ on the simplex $\lambda_i\ge0$, $\sum_i\lambda_i=1$, and "
-        r"weights~$w_k$ with $\sum_k w_k\,p(\lambda^{(k)})=\mathrm{E}[p]$ for every polynomial~$p$ of degree $\le t$ in the "
-        r"space that its table names. The mean~$\mathrm{E}$ is one over a probability measure, so that weights sum to~1."
+        r"A rule of degree~$t$ consists of nodes $\lambda^{(k)}$ on the simplex $\lambda_i\ge0$, $\sum_i\lambda_i=1$, "
+        r"and weights~$w_k$ with $\sum_k w_k\,p(\lambda^{(k)})=\mathrm{E}[p]$ for every polynomial~$p$ of degree "
+        r"$\le t$ in the space that its table names. The mean~$\mathrm{E}$ is one over a probability measure, so that "
+        r"weights sum to~1."
     )
     by_orbits = [rule for rule in rules if rule.space == "all" and sheet(rule).by_orbits]
     if by_orbits:
         example = max((expansion(rule) for rule in by_orbits), key=len)
         shown = "".join(f"${piece}$" if k % 2 else piece for k, piece in enumerate(example.split("$")))
         yield (
-            "Where a table lists orbits, take every different ordering of a pattern as a node, and give each of them the "
-            f"weight~$w$. {shown}"
+            "Where a table lists orbits, take every different ordering of a pattern as a node, and give each of them "
+            f"the weight~$w$. {shown}"
         )
     yield ""
 
@@ -93,8 +94,8 @@ def _overview(rules: Sequence[Rule]) -> list[str]:
     return [
         r"\begingroup\small\setlength{\tabcolsep}{5pt}\setlength{\LTcapwidth}{\textwidth}",
         rf"\begin{{longtable}}{{@{{}}{types}@{{}}}}",
-        rf"\caption{{The {counted(len(rules), 'rule')} of this appendix. No rule of the degree has fewer nodes than the "
-        r"bound; efficiency is bound over nodes.}\\",
+        rf"\caption{{The {counted(len(rules), 'rule')} of this appendix. No rule of the degree has fewer nodes than "
+        r"the bound; efficiency is bound over nodes.}\\",
         r"\toprule",
         " & ".join(head) + r" \\",
         r"\midrule\endfirsthead",
@@ -109,7 +110,7 @@ def _overview(rules: Sequence[Rule]) -> list[str]:
 
 
 def _together(lines: list[str]) -> list[str]:
-    """A table that goes to the next page where too little of this one is left: all of it if it is short, else a start."""
+    """A table that goes to the next page where this one has no room: for all of it if it is short, else for a start."""
     rows = sum(line.endswith((r"\\", r"\\*")) for line in lines[lines.index(r"\endlastfoot") :])
     height = _HEAD_AND_FOOT + 12.0 * rows
     room = height if height <= _KEPT_WHOLE else _HEAD_AND_FOOT

@@ -75,7 +75,8 @@ def export(rule: Rule) -> str:
         nodes="\n".join(_node(k, node) for k, node in zip(count, rule.node_decimals, strict=True)),
         joined=_joined(f"p{k}" for k in count),
         weights="\n".join(
-            f"   real(quad), parameter :: w{k} = {real(w)}_quad" for k, w in zip(count, rule.weight_decimals, strict=True)
+            f"   real(quad), parameter :: w{k} = {real(w)}_quad"
+            for k, w in zip(count, rule.weight_decimals, strict=True)
         ),
         joined_weights=_joined(f"w{k}" for k in count),
     )

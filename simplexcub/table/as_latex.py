@@ -1,7 +1,7 @@
 r"""A LaTeX fragment for an article that loads booktabs and longtable.
 
-One longtable, with repeated headings, then the verification and the sources in small type. A node's weight stands beside
-it; the weight of a whole orbit is the same number times the nodes of the orbit, and is left out. An entry takes one
+One longtable, with repeated headings, then the verification and the sources in small type. Of an orbit the weight of
+each node is given; that of the whole orbit is the same times its number of nodes, and is left out. An entry takes one
 line where all of it fits; otherwise its numbers stand below each other. Numbers are set in blocks of five digits, and
 broken only where the width of the page leaves no choice.
 """

@@ -25,8 +25,8 @@ GAUSS = Source(
 STROUD = Source("Stroud 1971", "A. H. Stroud, Approximate Calculation of Multiple Integrals, Prentice-Hall (1971).")
 MANTEL = Source(
     "Mantel & Rabinowitz 1977",
-    "F. Mantel, P. Rabinowitz, The application of integer programming to the computation of fully symmetric integration "
-    "formulas in two and three dimensions, SIAM J. Numer. Anal. 14 (1977) 391–425.",
+    "F. Mantel, P. Rabinowitz, The application of integer programming to the computation of fully symmetric "
+    "integration formulas in two and three dimensions, SIAM J. Numer. Anal. 14 (1977) 391–425.",
 )
 MARQUARDT = Source(
     "Marquardt 1963",
