@@ -41,8 +41,8 @@ def rounded(rule: Rule, digits: int) -> Rule:
     method = f"{rule.provenance.method}, rounded from {rule.digits} digits"
     short = replace(
         rule,
-        node_decimals=tuple(tuple(_round(x, digits) for x in node) for node in rule.node_decimals),
-        weight_decimals=tuple(_round(w, digits) for w in rule.weight_decimals),
+        node_decimals=tuple(tuple(rounded_text(x, digits) for x in node) for node in rule.node_decimals),
+        weight_decimals=tuple(rounded_text(w, digits) for w in rule.weight_decimals),
         orbits=tuple(_round_orbit(orbit, digits) for orbit in rule.orbits),
         digits=digits,
         provenance=replace(rule.provenance, method=method),
@@ -54,14 +54,23 @@ def rounded(rule: Rule, digits: int) -> Rule:
     return short.verified(replace(after, proof=_widened(before, rule, short)))
 
 
-def _round(text: str, digits: int) -> str:
+def rounded_text(text: str, digits: int) -> str:
+    """A decimal rounded to `digits` significant digits, half to even; as it is where it has no more.
+
+    Examples
+    --------
+    >>> rounded_text("0.0166667", 3), rounded_text("-0.5", 3)
+    ('0.0167', '-0.5')
+    """
     if significant_digits(text) <= digits:
         return text
     return format(Context(prec=digits, rounding=ROUND_HALF_EVEN).create_decimal(text), "f")
 
 
 def _round_orbit(orbit: Orbit, digits: int) -> Orbit:
-    return replace(orbit, values=tuple(_round(v, digits) for v in orbit.values), weight=_round(orbit.weight, digits))
+    return replace(
+        orbit, values=tuple(rounded_text(v, digits) for v in orbit.values), weight=rounded_text(orbit.weight, digits)
+    )
 
 
 def _widened(found: Verification, rule: Rule, short: Rule) -> dict[str, object] | None:
