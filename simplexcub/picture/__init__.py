@@ -45,7 +45,7 @@ def kind_of(path: str | os.PathLike[str]) -> str:
     return ending
 
 
-def encode(rule: Rule, kind: str) -> bytes:
+def encode(rule: Rule, kind: str, *, dpi: int = 300) -> bytes:
     """The picture of a rule as the bytes of a file; the same rule gives the same bytes.
 
     Parameters
@@ -54,6 +54,8 @@ def encode(rule: Rule, kind: str) -> bytes:
         N = 2 is drawn on a line, N = 3 on the triangle, N = 4 in the tetrahedron, larger N as profiles of the sorted
         components. Rules of ordered spectra are drawn on the chamber.
     kind : {"svg", "png", "pdf"}
+    dpi : int
+        Dots per inch of a png.
 
     Raises
     ------
@@ -62,7 +64,7 @@ def encode(rule: Rule, kind: str) -> bytes:
     """
     if kind not in ENDINGS:
         raise InputError(f"kind must be one of {', '.join(ENDINGS)}", kind)
-    content: bytes = _drawing().rule_picture(rule, kind)
+    content: bytes = _drawing().rule_picture(rule, kind, dpi=dpi)
     return content
 
 

@@ -1,4 +1,4 @@
-"""A rule as HTML for a notebook: what it is, what was checked, its first numbers, and its picture where one can be drawn.
+"""A rule as HTML for a notebook: what it is, what was checked, its first numbers, its picture where one can be drawn.
 
 Everything that came from a table is escaped. The picture is a data address, so that nothing in it can act on the page.
 """
@@ -18,6 +18,7 @@ from simplexcub.table.sheet import sheet
 DIGITS = 8
 _MOST_ROWS = 6
 _SHOWN = ("status", "exact for", "checked", "lower bound", "efficiency", "proof")
+_DOTS = 150  # an inch
 _MOST_DRAWN = 500  # nodes; beyond it a picture takes longer than a cell should
 
 
@@ -36,10 +37,10 @@ def html(rule: Rule) -> str:
 
 
 def _picture(rule: Rule) -> Iterator[str]:
-    if available() and 2 <= rule.measure.N and len(rule) <= _MOST_DRAWN:
-        data = b64encode(encode(rule, "svg")).decode("ascii")
+    if available() and rule.measure.N >= 2 and len(rule) <= _MOST_DRAWN:
+        data = b64encode(encode(rule, "png", dpi=_DOTS)).decode("ascii")
         alt = escape(f"Nodes of the rule: {heading(rule)}", quote=True)
-        yield f'<img alt="{alt}" style="max-width:30em" src="data:image/svg+xml;base64,{data}">'
+        yield f'<img alt="{alt}" style="max-width:30em" src="data:image/png;base64,{data}">'
 
 
 def _facts(rule: Rule) -> Iterator[str]:

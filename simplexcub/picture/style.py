@@ -62,14 +62,14 @@ _SILENT: dict[str, dict[str, Any]] = {
 }
 
 
-def drawn(width: float, height: float, kind: str, paint: Callable[[Figure], None]) -> bytes:
+def drawn(width: float, height: float, kind: str, paint: Callable[[Figure], None], *, dpi: int = 300) -> bytes:
     """The bytes of a figure of the given size in inches; `paint` puts the picture on it."""
     with mpl.rc_context(_SETTINGS):
         figure = Figure(figsize=(width, height), facecolor=PAPER)
         FigureCanvasAgg(figure)
         paint(figure)
         content = io.BytesIO()
-        figure.savefig(content, format=kind, dpi=300, metadata=_SILENT[kind])
+        figure.savefig(content, format=kind, dpi=dpi, metadata=_SILENT[kind])
     return content.getvalue()
 
 
