@@ -87,12 +87,13 @@ def _overview(rules: Sequence[Rule]) -> list[str]:
     for rule in rules:
         check = rule.verification
         bound = ["--", "--"] if check is None else [str(check.lower_bound), efficiency(check.lower_bound, len(rule))]
-        measure = [tex.prose(measure_name(rule.measure))] if several else []
+        words = measure_name(rule.measure).replace(" eigenvalue measure", "").replace(" measure", "")
+        measure = [tex.prose(words)] if several else []
         cells = [*measure, rule.space, str(rule.degree), tex.prose(rule.symmetry), str(len(rule)), *bound]
         rows.append(" & ".join([*cells, str(rule.digits)]) + r" \\")
     types = f"{'l' if several else ''}lrlrrrr"
     return [
-        r"\begingroup\small\setlength{\tabcolsep}{5pt}\setlength{\LTcapwidth}{\textwidth}",
+        r"\begingroup\footnotesize\setlength{\tabcolsep}{4pt}\setlength{\LTcapwidth}{\textwidth}",
         rf"\begin{{longtable}}{{@{{}}{types}@{{}}}}",
         rf"\caption{{The {counted(len(rules), 'rule')} of this appendix. No rule of the degree has fewer nodes than "
         r"the bound; efficiency is bound over nodes.}\\",
