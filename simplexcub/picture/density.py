@@ -16,7 +16,7 @@ from simplexcub.moments.alternant import Kernel
 from simplexcub.picture.style import FloatArray
 
 Density = Callable[[FloatArray], FloatArray]
-_STEPS = 20_000
+_STEPS = 4_000
 
 
 def density(measure: Measure) -> Density | None:

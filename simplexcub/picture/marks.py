@@ -6,6 +6,8 @@ from collections.abc import Sequence
 
 import numpy as np
 from matplotlib.axes import Axes
+from matplotlib.collections import PathCollection
+from matplotlib.transforms import IdentityTransform
 
 from simplexcub.picture import style
 from simplexcub.picture.orbits import Group
@@ -38,23 +40,30 @@ def put(
         From 0, near, to 1, far: far nodes are paler and lie below near ones. Without it small marks lie on large ones.
     """
     owner = {i: k for k, orbit in enumerate(orbits) for i in orbit.nodes}
-    below_first = np.argsort(-np.abs(weights) if depth is None else -depth, kind="stable")
-    for place, i in enumerate(below_first):
-        k = owner[int(i)]
-        shape, colour = style.mark(k)
-        away = 0.0 if depth is None else _FARTHEST * float(depth[i])
-        area = scale * abs(float(weights[i]))
-        x, y = points[i]
-        axes.scatter(
-            x,
-            y,
-            s=area / style.unit_area(shape),
-            marker=shape,
-            c=[style.blend(colour if weights[i] >= 0 else style.PAPER, away)],
-            edgecolors=[style.blend(style.INK, away)],
+    order = np.argsort(-np.abs(weights) if depth is None else -depth, kind="stable")
+    away = np.zeros(len(weights)) if depth is None else _FARTHEST * depth
+    looks = [style.mark(owner[int(i)]) for i in order]
+    area = scale * np.abs(weights[order])
+    axes.add_collection(
+        PathCollection(
+            [style.outline(shape) for shape, _ in looks],
+            sizes=area,
+            offsets=points[order],
+            offset_transform=axes.transData,
+            transform=IdentityTransform(),
+            facecolors=[
+                style.blend(colour if weights[i] >= 0 else style.PAPER, float(away[i]))
+                for i, (_, colour) in zip(order, looks, strict=True)
+            ],
+            edgecolors=[style.blend(style.INK, float(away[i])) for i in order],
             linewidths=0.6,
-            zorder=3 + place / len(weights),
+            zorder=3,
             clip_on=False,
-        )
-        if weights[i] < 0:
-            axes.scatter(x, y, s=area, marker="x", c=style.INK, linewidths=0.6, zorder=3 + place / len(weights))
+        ),
+        autolim=False,
+    )
+    negative = order[weights[order] < 0]
+    if negative.size:
+        x, y = points[negative].T
+        size = scale * np.abs(weights[negative])
+        axes.scatter(x, y, s=size, marker="x", c=style.INK, linewidths=0.6, zorder=4, clip_on=False)

@@ -17,6 +17,8 @@ from matplotlib.axes import Axes
 from matplotlib.backends.backend_agg import FigureCanvasAgg
 from matplotlib.figure import Figure
 from matplotlib.markers import MarkerStyle
+from matplotlib.path import Path
+from matplotlib.transforms import Affine2D
 from numpy.typing import NDArray
 
 FloatArray = NDArray[np.float64]
@@ -100,6 +102,12 @@ def unit_area(shape: str) -> float:
         x, y = np.asarray(polygon).T
         total += abs(float(np.dot(x[:-1], y[1:]) - np.dot(x[1:], y[:-1]))) / 2
     return total
+
+
+def outline(shape: str) -> Path:
+    """A shape's outline around the origin with area 1."""
+    style = MarkerStyle(shape)
+    return style.get_path().transformed(style.get_transform()).transformed(Affine2D().scale(unit_area(shape) ** -0.5))
 
 
 def area_per_weight(weights: FloatArray, room: float) -> float:

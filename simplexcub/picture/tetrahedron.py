@@ -51,7 +51,7 @@ def paint(figure: Figure, rule: Rule) -> None:
     middle = flat.mean(axis=0)
     for corner, name in zip(flat, names, strict=True):
         away = (corner - middle) / np.linalg.norm(corner - middle)
-        x, y = corner + (0.14 if chamber else 0.09) * away
+        x, y = corner + away * ((0.15, 0.075) if chamber else (0.09, 0.075))
         solid.text(x, y, name, ha="center", va="center", fontsize=style.TEXT)
     solid.set_xlim(flat[:, 0].min() - 0.17, flat[:, 0].max() + 0.17)
     solid.set_ylim(flat[:, 1].min() - 0.1, flat[:, 1].max() + 0.1)

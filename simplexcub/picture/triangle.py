@@ -21,7 +21,7 @@ from simplexcub.rule import Rule
 
 SIZE = (style.COLUMN, 3.6)
 CORNERS = np.array([[0.5, np.sqrt(0.75)], [0.0, 0.0], [1.0, 0.0]])
-_FINE = 150
+_FINE = 110
 _LEVELS = len(style.SHADES) - 1
 _CHAMBER = (r"$(1,0,0)$", r"$(\frac{1}{2},\frac{1}{2},0)$", r"$(\frac{1}{3},\frac{1}{3},\frac{1}{3})$")
 
