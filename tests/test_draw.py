@@ -114,7 +114,7 @@ def test_without_matplotlib_there_is_one_clear_line(
     path = tmp_path / "x.svg"
     status, out, err = call("draw", "tables/flat/N3/all-full-t05-7.json", "-o", path)
     assert (status, out) == (2, [])
-    assert err == ["simplexcub: a picture needs matplotlib; got none here. Install it: pip install 'simplexcub[plot]'"]
+    assert err == ["simplexcub: a picture needs matplotlib; got none here. Install it: pip install matplotlib"]
     assert not path.exists()
     monkeypatch.setattr("simplexcub.picture.notebook.available", lambda: False)
     assert "<img" not in html(HS[3])

@@ -103,5 +103,5 @@ def draw_convergence(errors: Sequence[Error], title: str, path: str | os.PathLik
 
 def _drawing() -> Any:
     if not available():
-        raise InputError("a picture needs matplotlib", "none here", "Install it: pip install 'simplexcub[plot]'")
+        raise InputError("a picture needs matplotlib", "none here", "Install it: pip install matplotlib")
     return import_module("simplexcub.picture.drawing")
