@@ -41,6 +41,7 @@ _HOME = {
     "Rule": "rule",
     "solve": "search",
     "verify": "verify",
+    "draw": "picture",
     "load": "table",
     "read": "table",
     "save": "table",

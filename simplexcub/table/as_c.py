@@ -10,9 +10,9 @@ from simplexcub.rule import Rule
 from simplexcub.table.program import header, name, real
 
 _USAGE = """\
-Use:      #include "{name}.h"
-          static double f(const double *x, void *p) {{ (void)p; return x[0] * x[0]; }}
-          double mean = {name}_mean(f, 0);
+Use: include this file; then, with
+         static double f(const double *x, void *p) {{ (void)p; return x[0] * x[0]; }}
+     the mean of f is {name}_mean(f, 0).
 Define RULE_LONG_DOUBLE before that for long double in place of double."""
 _CODE = """\
 #ifndef {guard}

@@ -30,7 +30,7 @@ def rounded(rule: Rule, digits: int) -> Rule:
     >>> from simplexcub.measures import flat
     >>> from simplexcub.table.shipped import load
     >>> rounded(load(flat(2), degree=3), 8).node_decimals[0]
-    ('0.21132487', '0.78867513')
+    ('0.78867513', '0.21132487')
     """
     if not 1 <= digits <= rule.digits:
         remedy = "Solve with more --digits for longer numbers."
