@@ -23,7 +23,7 @@ from simplexcub.picture.notebook import html
 
 def test_errors_are_against_the_exact_mean() -> None:
     found = measure_errors(spectral_function("von-neumann"), hilbert_schmidt(2))
-    assert found.exact
+    assert found.against == "the exact mean"
     assert found.reference == pytest.approx(1 / 3, abs=1e-15)  # Page 1993: 1/3 + 1/4 − 1/4
     assert [error.degree for error in found.rules] == list(range(1, 42, 2))
     assert [error.nodes for error in found.rules] == list(range(1, 22))
@@ -43,15 +43,22 @@ def test_polynomials_are_exact_from_their_degree_on() -> None:
 @pytest.mark.parametrize("name", ["tsallis-1/2", "power-sum-3/2"])
 def test_real_powers_have_an_exact_mean_too(name: str) -> None:
     found = measure_errors(spectral_function(name), bures(2))
-    assert found.exact
+    assert found.against == "the exact mean"
     assert found.rules[-1].error < 1e-2 * found.rules[0].error
 
 
-def test_without_a_formula_the_best_rule_is_the_reference() -> None:
+def test_without_a_formula_a_finer_rule_is_the_reference() -> None:
     found = measure_errors(spectral_function("largest"), flat(2))
-    assert not found.exact
-    assert found.rules[-1].degree == 39
-    assert found.reference == pytest.approx(0.75, abs=1e-3)
+    assert found.against == "a product rule of degree 255"
+    assert found.rules[-1].degree == 41
+    assert found.reference == pytest.approx(0.75, abs=5e-5)  # ∫ max(x, 1 − x) dx
+    assert found.rules[-1].error == pytest.approx(abs(found.rules[-1].value - 0.75), abs=5e-5)
+
+
+def test_without_any_other_the_best_rule_is_the_reference_and_is_left_out() -> None:
+    found = measure_errors(spectral_function("largest"), bures(3))
+    assert found.against == "the best of them"
+    assert found.rules[-1].degree == 19
     with pytest.raises(NothingFound, match="0 shipped"):
         measure_errors(spectral_function("purity"), flat(9))
 
@@ -60,7 +67,7 @@ def test_draw_prints_the_errors_that_it_draws(call: Call, tmp_path: Path) -> Non
     path = tmp_path / "errors.svg"
     status, out, err = call("draw", "--convergence", "von-neumann", "--measure", "flat", "-N", 2, "-o", path)
     assert (status, err) == (0, [])
-    assert out[0] == "exact mean 0.5"  # −2 ∫ x ln x dx = 1/2
+    assert out[0] == "the exact mean: 0.5"  # −2 ∫ x ln x dx = 1/2
     assert out[1].split() == ["degree", "nodes", "error"]
     assert out[2].split() == ["1", "1", "1.9e-01"]  # ln 2 − 1/2
     assert path.read_bytes().endswith(b"</svg>\n")

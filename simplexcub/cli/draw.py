@@ -53,10 +53,9 @@ def _convergence(args: argparse.Namespace) -> int:
     f = spectral_function(args.convergence)
     measure = measure_of(args)
     found = measure_errors(f, measure)
-    against = "exact mean" if found.exact else "value of the best shipped rule"
-    title = f"{f.name}, {measure_name(measure)}: error of the shipped rules against the {against}"
+    title = f"{f.name}, {measure_name(measure)}: error of the shipped rules against {found.against}"
     draw_convergence(found.rules, title, args.output, spread=found.spread)
-    print(f"{against} {found.reference:.15g}\n{'degree':>6}  {'nodes':>5}  {'error':>7}")
+    print(f"{found.against}: {found.reference:.15g}\n{'degree':>6}  {'nodes':>5}  {'error':>7}")
     for line in found.rules:
         print(f"{line.degree:>6}  {line.nodes:>5}  {line.error:7.1e}")
     return 0

@@ -39,7 +39,7 @@ def paint(figure: Figure, errors: Sequence[Error], title: str, *, spread: float)
         reach = np.array([nodes.min(), max(nodes.max(), 10 * nodes.min())])
         label = "sampling, one standard deviation"
         right.plot(reach, spread / np.sqrt(reach), color=style.GREY, linewidth=1.0, linestyle=(0, (5, 2)), label=label)
-        right.legend(fontsize=style.SMALL, frameon=False, loc="lower left")
+        right.legend(fontsize=style.SMALL, frameon=False, loc="lower right", bbox_to_anchor=(1, 1), ncols=2)
     left.set_yscale("log")
     right.set_xscale("log")
     left.set_ylabel("error of the mean")
