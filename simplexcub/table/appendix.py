@@ -18,7 +18,7 @@ from simplexcub.table.sources import numbered
 _MARGIN = 20  # millimetres
 _WIDE = 483.0  # points: what these margins leave of A4
 _HEAD_AND_FOOT = 140.0  # points that caption, headings and footnote take
-_KEPT_WHOLE = 320.0  # a table no taller than this is kept on one page
+_KEPT_WHOLE = 450.0  # a table no taller than this is kept on one page
 
 
 def appendix(rules: Sequence[Rule], *, standalone: bool = False) -> str:
@@ -37,7 +37,9 @@ def appendix(rules: Sequence[Rule], *, standalone: bool = False) -> str:
     body = [*_introduction(ordered), *(_overview(ordered) if len(ordered) > 1 else ())]
     for rule in ordered:
         body += _together(fragment(rule, width, cited=cited, example=False))
-    body += [r"\subsection*{Sources}", *bibliography(cited)] if cited else []
+    if cited:
+        room = min(_KEPT_WHOLE, 50 + 22.0 * len(cited))
+        body += [_with_room(room), r"\subsection*{Sources}", *bibliography(cited)]
     lines = _document(body, ordered) if standalone else [f"% In the preamble: {_packages()}", *body]
     return "\n".join(lines) + "\n"
 
@@ -115,5 +117,9 @@ def _together(lines: list[str]) -> list[str]:
     rows = sum(line.endswith((r"\\", r"\\*")) for line in lines[lines.index(r"\endlastfoot") :])
     height = _HEAD_AND_FOOT + 12.0 * rows
     room = height if height <= _KEPT_WHOLE else _HEAD_AND_FOOT
-    start = rf"\par\ifdim\dimexpr\pagegoal-\pagetotal\relax<{room:g}pt\newpage\fi"
-    return [start, *lines]
+    return [_with_room(room), *lines]
+
+
+def _with_room(points: float) -> str:
+    """LaTeX that turns the page where less than so many points of it are left."""
+    return rf"\par\penalty0\ifdim\dimexpr\pagegoal-\pagetotal\relax<{points:g}pt\newpage\fi"

@@ -21,6 +21,7 @@ MARK = "simplexcub rule"
 PACKAGES = ("booktabs", "longtable")
 NARROW = 345.0  # points: the text width of a plain article at 10 pt
 _GAP = 10.0  # between columns
+_FOOTNOTE_LINE, _FOOTNOTE_LETTER = 9.5, 3.9  # height of a line and mean width of a letter, in points
 _LONGEST_BLOCK = 24  # lines that are kept on one page
 _SAID_BEFORE = ("measure", "density", "exact for", "space", "degree", "nodes", "digits")  # by the caption
 
@@ -69,6 +70,9 @@ def fragment(
     said = {fact.label: fact for fact in facts(rule)}
     layout = _wide(page, width) or _tall(page, width)
     across = len(layout.columns)
+    footnote = _footnote(rule, said, cited or {})
+    room = round(_FOOTNOTE_LINE * (1 + len(footnote) * _FOOTNOTE_LETTER / width))
+    # Every page keeps room for the footnote, so that it stays with the last row; at the end the room is taken back.
     return [
         rf"\begingroup{layout.size.command}\emergencystretch=3em",
         rf"\setlength{{\tabcolsep}}{{{_GAP / 2:g}pt}}\setlength{{\LTcapwidth}}{{\textwidth}}",
@@ -84,13 +88,16 @@ def fragment(
         layout.head,
         r"\midrule",
         r"\endhead",
-        rf"\midrule\multicolumn{{{across}}}{{r@{{}}}}{{\emph{{continues}}}}\\",
+        rf"\midrule\multicolumn{{{across}}}{{r@{{}}}}{{\emph{{continues}}}}\\\noalign{{\vskip {room}pt}}",
         r"\endfoot",
-        r"\bottomrule",
+        rf"\bottomrule\noalign{{\vskip{room}pt}}",
         r"\endlastfoot",
         *layout.rows,
         r"\end{longtable}",
-        *_footnote(rule, said, cited or {}),
+        rf"\nopagebreak\vskip-{room}pt",
+        r"\noindent{\footnotesize\raggedright\interlinepenalty=10000",
+        f"{footnote}.",
+        r"\par}",
         r"\endgroup",
     ]
 
@@ -204,7 +211,7 @@ def _beside(page: Sheet, entry: Entry) -> Sequence[str]:
     return tex.pattern(pattern), *([counted(int(nodes), "node")] if "w" in page.labels else [])
 
 
-def _footnote(rule: Rule, said: dict[str, Fact], cited: Mapping[Source, int]) -> list[str]:
+def _footnote(rule: Rule, said: dict[str, Fact], cited: Mapping[Source, int]) -> str:
     behind = {
         label: ", ".join(str(k) for k in sorted(cited[s] for s in these if s in cited))
         for label, these in sources(rule).items()
@@ -214,5 +221,4 @@ def _footnote(rule: Rule, said: dict[str, Fact], cited: Mapping[Source, int]) ->
     parts = [rf"\emph{{{fact.label}}}: {fact.tex}{marks.get(fact.label, '')}" for fact in shown]
     if "density" in marks:
         parts.append(rf"\emph{{density}}:{marks['density']}")
-    text = ";\n".join(parts)
-    return [r"\nopagebreak\par\noindent{\footnotesize\raggedright", f"{text}.", r"\par}"]
+    return ";\n".join(parts)
