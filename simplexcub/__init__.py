@@ -20,6 +20,8 @@ from __future__ import annotations
 from importlib import import_module
 from typing import Any
 
+from simplexcub import hooks
+
 __version__ = "0.1.0"
 
 # Loaded when first asked for, so that `import simplexcub` costs nothing and each use pays only for its own floor.
@@ -39,6 +41,7 @@ _HOME = {
     "Rule": "rule",
     "solve": "search",
     "verify": "verify",
+    "draw": "picture",
     "load": "table",
     "read": "table",
     "save": "table",
@@ -49,6 +52,14 @@ _HOME = {
 }
 
 __all__ = [*_HOME, "__version__"]  # noqa: PLE0604 -- the names come from the table above
+
+
+def _html(rule: Any) -> str:
+    text: str = import_module("simplexcub.picture.notebook").html(rule)
+    return text
+
+
+hooks.html = _html
 
 
 def __getattr__(name: str) -> Any:

@@ -15,6 +15,7 @@ import numpy as np
 from mpmath import mp, mpf
 from numpy.typing import NDArray
 
+from simplexcub import hooks
 from simplexcub.decimals import to_decimal
 from simplexcub.errors import InputError
 from simplexcub.measures import Measure
@@ -125,6 +126,10 @@ class Rule:
 
     def __repr__(self) -> str:
         return f"<Rule {self.measure}, {self.space}, degree {self.degree}, {len(self)} nodes, {self.digits} digits>"
+
+    def _repr_html_(self) -> str | None:
+        """What a notebook shows; None, and so the plain form, where no upper floor has lent the way to make it."""
+        return None if hooks.html is None else hooks.html(self)
 
     @cached_property
     def nodes(self) -> FloatArray:

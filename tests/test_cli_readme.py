@@ -14,6 +14,8 @@ from pathlib import Path
 import pytest
 from conftest import Call
 
+from simplexcub.cli import COMMANDS
+
 README = Path(__file__).resolve().parent.parent / "README.md"
 VARYING = [
     (re.compile(r"\d\.\de-\d+"), "RESIDUAL"),
@@ -52,7 +54,7 @@ def test_every_command_prints_what_the_readme_shows(
     monkeypatch.chdir(tmp_path)
     write_files(tmp_path)
     shown = sessions()
-    assert {command.split()[1] for command, _ in shown} == {"moments", "solve", "verify", "export", "average", "tables"}
+    assert {command.split()[1] for command, _ in shown} == set(COMMANDS)
     for command, expected in shown:
         program, *arguments = shlex.split(command)
         status, out, err = call(*arguments)

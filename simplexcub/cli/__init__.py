@@ -34,6 +34,7 @@ COMMANDS = {
     "export": "print a table in another format",
     "average": "mean of a function of the spectrum, with its error",
     "tables": "list the rules that come with the package",
+    "draw": "draw a rule, or how the shipped rules converge",
 }
 
 

@@ -1,55 +1,36 @@
-"""`simplexcub tables`: the rules that come with the package."""
+"""`simplexcub tables`: what is shipped, and single tables out of it."""
 
 from __future__ import annotations
 
 import argparse
 
 from simplexcub.cli.options import whole
-from simplexcub.errors import NothingFound
+from simplexcub.errors import InputError, NothingFound
 from simplexcub.measures import FAMILIES
-from simplexcub.table import Shipped, catalogue, efficiency, published
+from simplexcub.table import catalogue, render
+from simplexcub.table.overview import OVERVIEWS, by_name, overview
 
 EXAMPLE = "simplexcub tables hilbert-schmidt -N 3"
-_HEAD = ("measure", "space", "degree", "nodes", "bound", "efficiency", "published", "symmetry", "digits")
-_NUMBERS = _HEAD[2:7]
-_GAP = "  "
 
 
 def add_options(parser: argparse.ArgumentParser) -> None:
     """Declare the arguments of the command."""
     parser.add_argument("measure", nargs="?", metavar="MEASURE", help=f"only this one of {', '.join(FAMILIES)}")
     parser.add_argument("-N", type=whole, metavar="N", help="only this number of outcomes or eigenvalues")
+    parser.add_argument("--to", choices=tuple(OVERVIEWS), default="text", help="form of what is printed (default text)")
+    parser.add_argument("--show", metavar="NAME", help="print one table, such as flat/N3/all-full-t05-7")
 
 
 def run(args: argparse.Namespace) -> int:
     """List the rules beside the least number of nodes that any rule of the degree has, and the fewest published."""
+    if args.show is not None:
+        if args.measure is not None or args.N is not None:
+            raise InputError("--show must come without MEASURE and -N", "both", "The name says it all.")
+        print(render(by_name(args.show), args.to), end="")
+        return 0
     found = catalogue(args.measure, N=args.N)
     if not found:
         wanted = " ".join([args.measure or "", "" if args.N is None else f"N = {args.N}"]).strip()
         raise NothingFound("shipped table", f"none for {wanted}", "See 'simplexcub tables' for all, or solve for one.")
-    rows = [_HEAD, *(_row(item) for item in found)]
-    widths = [max(len(row[k]) for row in rows) for k in range(len(_HEAD))]
-    for row in rows:
-        cells = zip(_HEAD, row, widths, strict=True)
-        print(_GAP.join(cell.rjust(w) if name in _NUMBERS else cell.ljust(w) for name, cell, w in cells).rstrip())
+    print(overview(found, args.to), end="")
     return 0
-
-
-def _row(item: Shipped) -> tuple[str, ...]:
-    parameters = ", ".join(
-        f"{name} = {','.join(value) if isinstance(value, list) else value}"
-        for name, value in item.measure.items()
-        if name != "family" and not (item.family == "hilbert-schmidt" and name == "K")
-    )
-    mark = published(item.family, item.N, item.degree, item.symmetry) if item.space == "all" else None
-    return (
-        f"{item.family}, {parameters}",
-        item.space,
-        str(item.degree),
-        str(item.nodes),
-        str(item.bound),
-        efficiency(item.bound, item.nodes),
-        "–" if mark is None else f"{mark.nodes} {mark.symmetry}",
-        item.symmetry,
-        str(item.digits),
-    )

@@ -2,6 +2,8 @@
 
 from __future__ import annotations
 
+from collections.abc import Sequence
+
 from simplexcub.rule import Rule
 from simplexcub.table.describe import facts, heading
 from simplexcub.table.sheet import Sheet, sheet
@@ -17,6 +19,11 @@ def export(rule: Rule) -> str:
     lines += [f"- **{fact.label}**: {fact.text.translate(_SPECIAL)}" for fact in facts(rule)]
     lines += ["", page.legend, "", *_table(page)]
     return "\n".join(lines) + "\n"
+
+
+def export_several(rules: Sequence[Rule]) -> str:
+    """Several rules, a section each."""
+    return "\n".join(export(rule) for rule in rules)
 
 
 def _table(page: Sheet) -> list[str]:
