@@ -18,6 +18,7 @@ from simplexcub.rule import Rule
 from simplexcub.search import solve
 from simplexcub.symmetry import NAMES
 from simplexcub.table import efficiency, format_of, render, save
+from simplexcub.table.record import SPACES
 from simplexcub.verify import verify
 
 EXAMPLE = "simplexcub solve hilbert-schmidt -N 3 -t 7 -o hs.json"
@@ -28,7 +29,11 @@ def add_options(parser: argparse.ArgumentParser) -> None:
     add_measure(parser)
     parser.add_argument("-t", "--degree", type=whole, required=True, metavar="T", help="degree of exactness")
     parser.add_argument(
-        "--space", choices=("all",), default="all", help="polynomials to be exact for: all of degree ≤ T (default)"
+        "--space",
+        choices=SPACES,
+        default="all",
+        help="polynomials of degree ≤ T to be exact for: all (default); symmetric ones, with one node for each orbit;"
+        " or all of the ordered spectrum λ1 ≥ … ≥ λN",
     )
     parser.add_argument(
         "--symmetry",
