@@ -27,7 +27,7 @@ IntArray = NDArray[np.object_]  # Python integers of any length
 
 _CHUNK_POINTS = 4096
 _NOISE_POINTS = 6
-FEW_COMPONENTS = 6  # spectra of more take the basis of power sums
+FEW_COMPONENTS = 3  # spectra of more take the basis of power sums
 
 
 class Basis(Protocol):

@@ -220,7 +220,8 @@ def rule_from_representatives(
     """A rule for symmetric functions from (multiplicities, distinct values, weight of the orbit): one node for each."""
     printed = []
     for multiplicities, values, weight in orbits:
-        sizes, texts = [], []
+        sizes: list[int] = []
+        texts: list[str] = []
         for value, m in sorted(zip(values, multiplicities, strict=True), reverse=True):
             text = to_decimal(value, digits)
             if texts and texts[-1] == text:

@@ -145,7 +145,7 @@ class SpectralInvariants:
             rows.append(power.dot(m) // self._n)
         out = np.full((len(values), len(self)), one, dtype=object)
         if not rows:
-            return self._combined(out, work) >> self._guard
+            return self._combined(out, work, self._guard)
         g = np.stack(rows, axis=1)
         h = (g - fixed_point(self._centre, work)).dot(fixed_point(self._mix, work).T) >> work
         up, down = fixed_point(self._up, work), fixed_point(self._down, work)
@@ -157,10 +157,11 @@ class SpectralInvariants:
             for a, power_of in enumerate(e):
                 if power_of:
                     out[:, i] = out[:, i] * table[power_of][:, a] >> work
-        return self._combined(out, work) >> self._guard
+        return self._combined(out, work, self._guard)
 
-    def _combined(self, functions: IntArray, work: int) -> IntArray:
-        combined: IntArray = functions.dot(fixed_point(self._combine, work)) >> work
+    def _combined(self, functions: IntArray, work: int, guard: int) -> IntArray:
+        """ψ C, without the guard bits."""
+        combined: IntArray = functions.dot(fixed_point(self._combine, work)) >> (work + guard)
         return combined
 
     def means_fixed(self, measure: Measure, bits: int) -> IntArray:
@@ -191,7 +192,7 @@ class SpectralInvariants:
             for a, power in enumerate(e):
                 terms = _multiply(terms, tables[a][power], work) if power else terms
             result.append(sum(v * scaled[key] for key, v in terms.items()) >> work)
-        return self._combined(np.array(result, dtype=object), work) >> (work - bits)
+        return self._combined(np.array(result, dtype=object), work, work - bits)
 
 
 def _multiply(a: Polynomial, b: Polynomial, bits: int) -> Polynomial:

@@ -12,7 +12,7 @@ from mpmath import mp, mpf
 
 import simplexcub
 from simplexcub.errors import InputError, NothingFound
-from simplexcub.invariants import FEW_COMPONENTS, invariant_basis
+from simplexcub.invariants import invariant_basis
 from simplexcub.measures import Dirichlet, Measure, ordered
 from simplexcub.measures.chamber import Chamber
 from simplexcub.rule import Provenance, Rule, Space, rule_from_nodes, rule_from_orbits, rule_from_representatives
@@ -125,7 +125,7 @@ def solve(
             progress=progress,
         )
         return unfolded(rule, measure, digits)
-    groups = [spectra(measure.N)] if space == "symmetric" else _groups(measure, symmetry)
+    groups: list[Group] = [spectra(measure.N)] if space == "symmetric" else _groups(measure, symmetry)
     if measure.N == 2 and space == "symmetric":
         return gauss_pairs(measure, degree, digits=digits, provenance=_provenance(seed, "Gauss"))
     if measure.N == 2:
@@ -186,7 +186,7 @@ def _search(
     for i, group in enumerate(groups):
         share = Budget((budget - allowance.elapsed) / (len(groups) - i))
         most = MOST_NODES if best is None else best.nodes - 1
-        kind = PatternSearch if isinstance(group, Spectra) and group.n > FEW_COMPONENTS else Search
+        kind = PatternSearch if isinstance(group, Spectra) else Search
         search = kind(
             Problem(measure, degree, group),
             digits=digits,

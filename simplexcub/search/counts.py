@@ -42,6 +42,8 @@ def random_values(type_: OrbitType, points: np.ndarray) -> np.ndarray:
 def conditions(group: Group, degree: int) -> list[Condition]:
     """(types, need): the orbits of these types together must have at least `need` unknowns."""
     types = group.types
+    if isinstance(group, Spectra):
+        return [(frozenset(types), count_partitions(degree, group.n))]
     basis = invariant_basis(group, degree)
     rng = np.random.default_rng(0)
     spans = {}

@@ -8,7 +8,8 @@ multiplicities that are tried first, from the least k with M k ≥ equations upw
 for each representative, from the same weights disturbed at random, and now and then all N eigenvalues apart. Starts are
 block means of sampled spectra.
 
-M rises from the lower bound until a structure is solved; each later round returns to the smaller M with more structures.
+M rises from the lower bound, in longer steps after the first few, until a structure is solved. If all N eigenvalues are
+apart there, an elimination walk goes down from it. Each later round returns to the smaller M with more structures.
 """
 
 from __future__ import annotations
@@ -23,11 +24,14 @@ import numpy as np
 from simplexcub.measures import Measure
 from simplexcub.search.counts import Counts, fewest_nodes
 from simplexcub.search.driver import Search
+from simplexcub.search.eliminate import Walk
 from simplexcub.search.gauss import gauss_nodes, recurrence
 from simplexcub.search.tasks import Chunk
 from simplexcub.symmetry import OrbitType
 
-TRIES = (12, 36, 120)  # structures of each number of representatives, round by round
+TURNS = (1, 4, 16)  # structures for each number of values, of each number of representatives, up to each round
+STEPS = 4  # numbers of representatives that are tried one by one before the climb goes faster
+LARGEST_WALK = 16  # components of a walk
 EXTRA = 6  # values that a representative may have beyond the least number that can do
 _DISTURBED = 0.4  # spread of the logarithms of disturbed weights
 _DIGITS = 20
@@ -38,24 +42,34 @@ class PatternSearch(Search):
 
     def run(self) -> None:
         """Search until a rule is as small as the rounds can make it or the budget ends."""
-        least = fewest_nodes(self.problem.group, self.problem.degree)
-        done = 0
-        for tries in TRIES:
-            nodes = least
-            while nodes <= self._most() and not self.budget.spent:
-                if self._try(nodes, done, tries):
-                    break
-                nodes += 1
-            done = tries
-            if self.best is not None and self.best.nodes == least:
+        group, equations = self.problem.group, len(self.problem.basis)
+        least = max(fewest_nodes(group, self.problem.degree), -(-equations // group.n))
+        first = 0
+        for last in TURNS:
+            self._climb(least, first, last)
+            first = last
+            found = self.best
+            if found is None or found.nodes <= least or self.budget.spent:
                 return
+            if len(found.counts) == 1 and found.counts[0][0].unknowns == group.n <= LARGEST_WALK:
+                self._walk([last], Walk(found.counts, found.candidate[None], max(1, found.nodes // 8), 0, False))
+
+    def _climb(self, least: int, first: int, last: int) -> None:
+        """Try the structures of these turns with more and more representatives, until one is solved."""
+        equations = len(self.problem.basis)
+        nodes = least
+        while nodes <= min(self._most(), equations) and not self.budget.spent:
+            if self._try(nodes, first, last):
+                return
+            far = self.best is None and nodes >= least + STEPS
+            nodes += max(1, nodes // 8) if far else 1
 
     def _try(self, nodes: int, first: int, last: int) -> bool:
-        """Try the structures with these numbers; whether one was solved."""
+        """Try the structures of these turns; whether one was solved."""
         tasks = (
             Chunk(self.problem, counts, self.seed, number)
-            for number, counts in enumerate(structures(self.problem.measure, len(self.problem.basis), nodes, last))
-            if number >= first and not self.budget.spent
+            for number, counts in structures(self.problem.measure, len(self.problem.basis), nodes, first, last)
+            if not self.budget.spent
         )
         for task, solutions in self.workers.in_order(tasks):
             self._report(f"starts for {nodes} representatives")
@@ -66,20 +80,24 @@ class PatternSearch(Search):
         return False
 
 
-def structures(measure: Measure, equations: int, nodes: int, number: int) -> Iterator[Counts]:
-    """The first `number` structures of so many representatives; the same ones every time."""
+def structures(measure: Measure, equations: int, nodes: int, first: int, last: int) -> Iterator[tuple[int, Counts]]:
+    """(number, structure) of so many representatives, each number of values in turn; the same ones every time.
+
+    Only turns from `first` to before `last` are given; turn 0 has the multiplicities of the density.
+    """
     n = measure.N
-    rng = np.random.default_rng((n, equations, nodes))
     least = min(n, max(-(-equations // nodes), 1))
-    choices = [*range(least, min(n, least + EXTRA + 1)), n]
-    for i in range(number):
-        shares = density_shares(measure, choices[i % len(choices)])
-        drawn = [_multiplicities(n, shares)] * nodes
-        if i >= len(choices):
-            noise = np.exp(_DISTURBED * rng.standard_normal((nodes, len(shares))))
-            drawn = [_multiplicities(n, shares * factors) for factors in noise]
-        counts = Counter(drawn)
-        yield tuple((OrbitType(_pattern(sizes), 1), c) for sizes, c in sorted(counts.items()))
+    choices = dict.fromkeys([*range(least, min(n, least + EXTRA + 1)), n])
+    for turn in range(first, last):
+        for values in choices:
+            shares = density_shares(measure, values)
+            drawn = [_multiplicities(n, shares)] * nodes
+            if turn:
+                rng = np.random.default_rng((n, equations, nodes, turn, values))
+                noise = np.exp(_DISTURBED * rng.standard_normal((nodes, values)))
+                drawn = [_multiplicities(n, shares * factors) for factors in noise]
+            counts = Counter(drawn)
+            yield turn, tuple((OrbitType(_pattern(sizes), 1), c) for sizes, c in sorted(counts.items()))
 
 
 @lru_cache(maxsize=256)

@@ -47,9 +47,7 @@ def folded(rule: Rule) -> Rule:
         for key, weight in weights.items():
             values = list(dict.fromkeys(key))
             orbits.append((tuple(key.count(v) for v in values), [mpf(v) for v in values], weight))
-    return rule_from_representatives(
-        rule.measure, rule.degree, orbits, digits=rule.digits, provenance=rule.provenance
-    )
+    return rule_from_representatives(rule.measure, rule.degree, orbits, digits=rule.digits, provenance=rule.provenance)
 
 
 def unfolded(rule: Rule, measure: Measure, digits: int) -> Rule:
