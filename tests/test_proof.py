@@ -11,7 +11,7 @@ from mpmath import mp, mpf
 
 from simplexcub.decimals import to_decimal
 from simplexcub.errors import InputError
-from simplexcub.measures import bures, dirichlet, flat, hilbert_schmidt, ordered
+from simplexcub.measures import bures, dirichlet, flat, hilbert_schmidt
 from simplexcub.rule import Provenance, Rule, rule_from_orbits
 from simplexcub.table import read
 from simplexcub.table.formats import render

@@ -10,7 +10,7 @@ from mpmath import mp, mpf
 import simplexcub
 from simplexcub.decimals import to_decimal
 from simplexcub.errors import InputError
-from simplexcub.measures import dirichlet, flat, hilbert_schmidt, induced
+from simplexcub.measures import bures, dirichlet, flat, hilbert_schmidt, induced
 from simplexcub.rule import Provenance, Rule, rule_from_orbits
 from simplexcub.verify import lower_bound, verify
 from simplexcub.verify.bounds import dimension

@@ -38,6 +38,7 @@ DEGREES: dict[Space, dict[int, Sequence[int]]] = {
     },
     "ordered": {2: range(1, 20, 2), 3: range(1, 11), 4: range(1, 7)},
 }
+LARGEST_SIMPLEX = 6  # more components only as spectra of states
 SIZES = sorted({n for degrees in DEGREES.values() for n in degrees})
 
 
@@ -49,9 +50,10 @@ def targets(
 ) -> Iterator[tuple[Measure, int]]:
     """The (measure, degree) pairs of the shipped set, cheapest first; empty arguments stand for all."""
     for n, degrees in DEGREES[space].items():
-        measures: tuple[Measure, ...] = (flat(n), hilbert_schmidt(n), bures(n))
-        if space == "ordered":  # no exact moments of the ordered spectrum for Bures
-            measures = measures[:2]
+        measures: tuple[Measure, ...] = (hilbert_schmidt(n),)
+        if n <= LARGEST_SIMPLEX:
+            # Bures has no exact moments of the ordered spectrum.
+            measures = (flat(n), hilbert_schmidt(n), *(() if space == "ordered" else (bures(n),)))
         for measure in measures:
             if (not families or measure.family in families) and (not sizes or n in sizes):
                 yield from ((measure, degree) for degree in degrees if not only or degree in only)
