@@ -18,6 +18,7 @@ from simplexcub.rule import Rule
 from simplexcub.search import solve
 from simplexcub.symmetry import NAMES
 from simplexcub.table import efficiency, format_of, render, save
+from simplexcub.table.describe import counted, noun
 from simplexcub.table.record import SPACES
 from simplexcub.verify import verify
 
@@ -76,7 +77,7 @@ def run(args: argparse.Namespace) -> int:
     rule = rule.verified(report.verification)
     if rule.provenance.method == "conical product":
         complain(
-            f"no smaller rule was found in time; this is the conical product rule of {len(rule)} nodes."
+            f"no smaller rule was found in time; this is the conical product rule of {counted(len(rule), noun(rule))}."
             " A longer --budget or another --seed may find fewer"
         )
     _deliver(rule, args.output)
@@ -129,4 +130,5 @@ def _summary(rule: Rule) -> str:
     if check:
         share = efficiency(check.lower_bound, len(rule))
         found = f", at least {check.lower_bound} needed (efficiency {share}), residual {check.max_residual}"
-    return f"{rule.measure}, {rule.space}, degree {rule.degree}: {len(rule)} nodes, {rule.digits} digits{found}"
+    size = counted(len(rule), noun(rule))
+    return f"{rule.measure}, {rule.space}, degree {rule.degree}: {size}, {rule.digits} digits{found}"

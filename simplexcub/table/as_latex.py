@@ -10,7 +10,7 @@ from __future__ import annotations
 import re
 
 from simplexcub.rule import Rule
-from simplexcub.table.describe import Fact, counted, escape, facts, heading
+from simplexcub.table.describe import Fact, counted, escape, facts, heading, measure_name, noun
 from simplexcub.table.sheet import Entry, Sheet, sheet
 
 MARK = "simplexcub rule"
@@ -58,10 +58,10 @@ def export(rule: Rule) -> str:
 
 def _caption(rule: Rule, page: Sheet, said: dict[str, Fact]) -> str:
     orbits = f" in {counted(len(rule.orbits), 'orbit')}" if page.by_orbits and rule.space == "all" else ""
-    rule_in_words = f"{counted(len(rule), 'node')}{orbits}, exact for {said['exact for'].tex}"
+    rule_in_words = f"{counted(len(rule), noun(rule))}{orbits}, exact for {said['exact for'].tex}"
     legend = re.sub(r"\b([wW])\b", r"$\1$", _symbols(page.legend))
     return (
-        f"{escape(heading(rule).split(', degree')[0])}: {rule_in_words}. "
+        f"{escape(measure_name(rule.measure))}: {rule_in_words}. "
         f"Density {said['density'].tex}, of total mass 1; weights sum to 1. {legend}"
     )
 
