@@ -13,8 +13,7 @@ from mpmath import mp, mpf
 import simplexcub
 from simplexcub.errors import InputError, NothingFound
 from simplexcub.invariants import invariant_basis
-from simplexcub.measures import Dirichlet, Measure, ordered
-from simplexcub.measures.chamber import Chamber
+from simplexcub.measures import Chamber, Dirichlet, Measure, ordered
 from simplexcub.rule import Provenance, Rule, Space, rule_from_nodes, rule_from_orbits, rule_from_representatives
 from simplexcub.search.conical import MOST_NODES, conical_count, conical_rule
 from simplexcub.search.driver import Budget, Found, Progress, Search
@@ -109,7 +108,7 @@ def solve(
     ('0.2113248654', '0.7886751346')
     """
     _check(degree=degree, space=space, digits=digits, seed=seed, budget=budget, jobs=jobs)
-    if space != "all" and symmetry not in ("full", "best"):
+    if space != "all" and symmetry not in ("full", "best", *(("none",) if space == "ordered" else ())):
         raise InputError(f"symmetry must be full for rules of space {space}", symmetry, "Leave --symmetry out.")
     if space == "ordered":
         chamber = Chamber(ordered(measure))
