@@ -54,7 +54,7 @@ def test_ordered_bures_is_refused_with_the_reason(call: Call) -> None:
     assert (status, out, len(err)) == (2, [], 1)
     assert "bures(N=3)" in err[0]
     assert "no exact moments" in err[0]
-    assert "space symmetric" in err[0]
+    assert "Space symmetric" in err[0]
 
 
 @pytest.mark.parametrize("space", ["symmetric", "ordered"])
