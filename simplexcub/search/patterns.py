@@ -4,11 +4,11 @@ A representative takes k different values, N eigenvalues falling into k blocks o
 M k unknowns. All N apart come first, up to N = 64: that has the most freedom, almost every start from sampled spectra
 solves, and since the nodes stay close to typical spectra the error for entropies is some ten times smaller than with
 four to six values. After it come fewer values, from the least k with M k ≥ equations upward. S_N has far too many
-patterns of multiplicities to list, and only few of them serve: a node must come close to a typical spectrum, whose power
-sums hardly fluctuate when N is large. A k-point Gauss rule for the mean density of eigenvalues has those power sums, so
-its weights times N, rounded to integers of at least 1, are the multiplicities that are tried first; later come patterns
-of their own for each representative, from the same weights disturbed at random. Starts are block means of sampled
-spectra.
+patterns of multiplicities to list, and only few of them serve: a node must come close to a typical spectrum, whose
+power sums hardly fluctuate when N is large. A k-point Gauss rule for the mean density of eigenvalues has those power
+sums, so its weights times N, rounded to integers of at least 1, are the multiplicities that are tried first; later come
+patterns of their own for each representative, from the same weights disturbed at random. Starts are block means of
+sampled spectra.
 
 M rises from the lower bound, in longer steps after the first few, until a structure is solved. If all N eigenvalues are
 apart there, an elimination walk goes down from it. Each later round returns to the smaller M with more structures.
