@@ -184,18 +184,19 @@ def symmetric_basis(n: int, degree: int) -> SymmetricBasis:
 
 @lru_cache(maxsize=64)
 def centred_means(measure: Measure, exponents: tuple[tuple[int, ...], ...]) -> list[Fraction]:
-    """Exact E[Π_k g_k^{e_k}] for each tuple of exponents of the centred power sums g_2 … g_N."""
-    n = measure.N
+    """Exact E[Π_k g_k^{e_k}] for each tuple of exponents of the centred power sums g_2, g_3, …"""
+    n, top = measure.N, len(exponents[0]) + 1
     generators = []
-    for k in range(2, n + 1):
+    for k in range(2, top + 1):
         # g_k = (1/N) Σ_j C(k, j) N^j (−1)^(k−j) p_j with p_0 = N and p_1 = 1, as {exponents of p_2 … p_N: coefficient}
         terms: dict[tuple[int, ...], Fraction] = {}
         for j in range(k + 1):
-            key = tuple(int(i == j) for i in range(2, n + 1))
+            key = tuple(int(i == j) for i in range(2, top + 1))
             factor = n if j == 0 else 1
             terms[key] = terms.get(key, Fraction(0)) + Fraction(comb(k, j) * n**j * (-1) ** (k - j) * factor, n)
         generators.append(terms)
-    expansions: dict[tuple[int, ...], dict[tuple[int, ...], Fraction]] = {(0,) * (n - 1): {(0,) * (n - 1): Fraction(1)}}
+    zero = (0,) * (top - 1)
+    expansions: dict[tuple[int, ...], dict[tuple[int, ...], Fraction]] = {zero: {zero: Fraction(1)}}
     means: dict[tuple[int, ...], Fraction] = {}
     result = []
     for e in exponents:

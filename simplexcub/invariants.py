@@ -19,13 +19,15 @@ from numpy.typing import NDArray
 from simplexcub.basis import fixed_point, flat_points, symmetric_basis
 from simplexcub.jacobi import jacobi_basis
 from simplexcub.measures import Measure
-from simplexcub.symmetry import Group, OrbitType
+from simplexcub.spectral import spectral_basis
+from simplexcub.symmetry import Group, OrbitType, Spectra
 
 FloatArray = NDArray[np.float64]
 IntArray = NDArray[np.object_]  # Python integers of any length
 
 _CHUNK_POINTS = 4096
 _NOISE_POINTS = 6
+FEW_COMPONENTS = 3  # spectra of more take the basis of power sums
 
 
 class Basis(Protocol):
@@ -152,10 +154,18 @@ def invariant_basis(group: Group, degree: int) -> Basis:
     return FullInvariants(group.n, degree) if group.is_full else SubgroupInvariants(group, degree)
 
 
+def basis_for(group: Group, degree: int, measure: Measure) -> Basis:
+    """The polynomials to search on; for spectra of many components they are made for the measure."""
+    if isinstance(group, Spectra) and group.n > FEW_COMPONENTS:
+        return spectral_basis(measure, degree)
+    return invariant_basis(group, degree)
+
+
 @lru_cache(maxsize=64)
 def mean_vector(group: Group, degree: int, measure: Measure) -> FloatArray:
     """E[φ] of every invariant in double precision, rounded once from exact moments."""
     bits = 120
-    means = np.array([math.ldexp(float(m), -bits) for m in invariant_basis(group, degree).means_fixed(measure, bits)])
+    basis = basis_for(group, degree, measure)
+    means = np.array([math.ldexp(float(m), -bits) for m in basis.means_fixed(measure, bits)])
     means.flags.writeable = False
     return means

@@ -92,6 +92,8 @@ class Rule:
     weight_decimals : tuple of str, shape (M,)
         Summing to 1.
     space : {"all", "symmetric", "ordered"}
+        Polynomials in λ; symmetric ones, each node standing for all its orderings with their total weight; or those of
+        the ordered spectrum λ_1 ≥ … ≥ λ_N. In the last two every node has its largest coordinate first.
     symmetry : str
         Group that leaves the node set unchanged, by its name in :func:`simplexcub.symmetry.named_group`.
     digits : int
@@ -154,6 +156,9 @@ class Rule:
     def average(self, f: Callable[[FloatArray], Any]) -> Any:
         """Σ_k w_k f(λ^(k)): the mean of `f`, exact if `f` lies in the rule's space.
 
+        In space ``symmetric`` `f` must not depend on the order of the eigenvalues, and is evaluated once for each
+        representative. In space ``ordered`` `f` receives them in descending order, so ``x[:, 0]`` is the largest.
+
         Parameters
         ----------
         f : callable
@@ -209,6 +214,40 @@ def rule_from_orbits(
     )
 
 
+def rule_from_representatives(
+    measure: Measure,
+    degree: int,
+    orbits: Sequence[tuple[tuple[int, ...], Sequence[mpf], mpf]],
+    *,
+    digits: int,
+    provenance: Provenance,
+) -> Rule:
+    """A rule for symmetric functions from (multiplicities, distinct values, weight of the orbit): one node for each."""
+    printed = []
+    for multiplicities, values, weight in orbits:
+        sizes: list[int] = []
+        texts: list[str] = []
+        for value, m in sorted(zip(values, multiplicities, strict=True), reverse=True):
+            text = to_decimal(value, digits)
+            if texts and texts[-1] == text:
+                sizes[-1] += m
+            else:
+                texts.append(text)
+                sizes.append(m)
+        printed.append(Orbit(tuple(sizes), tuple(texts), to_decimal(weight, digits)))
+    return Rule(
+        measure,
+        degree,
+        tuple(tuple(t for t, m in zip(o.values, o.multiplicities, strict=True) for _ in range(m)) for o in printed),
+        tuple(orbit.weight for orbit in printed),
+        provenance,
+        space="symmetric",
+        symmetry="full",
+        digits=digits,
+        orbits=tuple(printed),
+    )
+
+
 def rule_from_nodes(
     measure: Measure,
     degree: int,
@@ -217,6 +256,7 @@ def rule_from_nodes(
     *,
     digits: int,
     provenance: Provenance,
+    space: Space = "all",
     symmetry: str = "none",
 ) -> Rule:
     """A rule from nodes, shape (M, N), and weights, shape (M,), in extended precision."""
@@ -227,6 +267,7 @@ def rule_from_nodes(
         printed,
         tuple(to_decimal(w, digits) for w in weights),
         provenance,
+        space=space,
         symmetry=symmetry,
         digits=digits,
     )

@@ -15,7 +15,7 @@ from itertools import pairwise
 from simplexcub.errors import InputError
 from simplexcub.moments.schur import distinct_permutations
 
-__all__ = ["Group", "OrbitType", "distinct_permutations", "named_group", "orbit_size"]
+__all__ = ["Group", "OrbitType", "Spectra", "distinct_permutations", "named_group", "orbit_size", "spectra"]
 
 Permutation = tuple[int, ...]
 NAMES = ("full", "alternating", "dihedral", "cyclic", "klein", "stabiliser", "product-A-B-…", "alpha", "none")
@@ -95,6 +95,31 @@ class Group:
         if self.is_full:
             return list(distinct_permutations(type_.pattern))
         return sorted({tuple(type_.pattern[i] for i in g) for g in self.elements})
+
+
+@dataclass(frozen=True)
+class Spectra(Group):
+    """S_N for functions of the spectrum: one representative stands for each orbit, and counts as one node.
+
+    The generic type, all coordinates apart, is the only one listed: it has the most unknowns at the same price. Nothing
+    here lists permutations or partitions, so N may be large.
+    """
+
+    @cached_property
+    def is_full(self) -> bool:
+        return True
+
+    @cached_property
+    def types(self) -> list[OrbitType]:
+        return [OrbitType(tuple(range(self.n)), 1)]
+
+    def arrangements(self, type_: OrbitType) -> list[tuple[int, ...]]:
+        return [type_.pattern]
+
+
+def spectra(n: int) -> Spectra:
+    """S_n on representatives of its orbits."""
+    return Spectra("spectra", n, named_group("full", n).generators)
 
 
 @lru_cache(maxsize=128)

@@ -3,7 +3,7 @@
 import pytest
 
 from simplexcub.errors import InputError
-from simplexcub.measures import dirichlet, flat, hilbert_schmidt, induced
+from simplexcub.measures import bures, dirichlet, flat, hilbert_schmidt, induced
 from simplexcub.symmetry import named_group
 from simplexcub.verify import lower_bound
 from simplexcub.verify.bounds import LARGEST_BASIS, dimension
@@ -78,8 +78,12 @@ def test_linear_bound_beyond_the_size_of_the_rank_form():
     assert lower_bound(hilbert_schmidt(8), 3) == 8
 
 
-def test_ordered_space_has_the_linear_bound():
-    assert lower_bound(flat(3), 7, "ordered") == 10
+def test_ordered_space_has_the_bound_of_its_chamber():
+    # In barycentric coordinates of the chamber the ordered flat measure is flat again, so both have the same bounds.
+    assert [lower_bound(flat(3), t, "ordered") for t in range(1, 8)] == [lower_bound(flat(3), t) for t in range(1, 8)]
+    assert lower_bound(flat(3), 7, "ordered") == 12
+    with pytest.raises(InputError, match=r"ordered moments must be of .* got bures\(N=3\)"):
+        lower_bound(bures(3), 3, "ordered")
 
 
 def test_bad_input():

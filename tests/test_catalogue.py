@@ -112,8 +112,8 @@ def test_the_top_level_load():
         (dirichlet(["1/2", 2]), {"degree": 3}, "simplexcub solve dirichlet --alpha 1/2,2 -t 3"),
         (
             flat(3),
-            {"degree": 5, "space": "ordered", "symmetry": "none"},
-            "simplexcub solve flat -N 3 -t 5 --space ordered --symmetry none",
+            {"degree": 55, "space": "ordered", "symmetry": "none"},
+            "simplexcub solve flat -N 3 -t 55 --space ordered --symmetry none",
         ),
     ],
     ids=str,
@@ -296,3 +296,5 @@ def test_the_build_as_a_command(tmp_path, caplog):
 def test_the_targets_are_the_promised_set():
     assert len(list(table_build.targets())) == 3 * (21 + 20 + 10 + 7 + 5)
     assert {measure for measure, _ in table_build.targets(["flat"], [3])} == {flat(3)}
+    assert [*table_build.targets([], [16], space="symmetric")] == [(hilbert_schmidt(16), t) for t in (6, 8, 10)]
+    assert {measure.family for measure, _ in table_build.targets(space="ordered")} == {"flat", "hilbert-schmidt"}

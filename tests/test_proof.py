@@ -11,7 +11,7 @@ from mpmath import mp, mpf
 
 from simplexcub.decimals import to_decimal
 from simplexcub.errors import InputError
-from simplexcub.measures import dirichlet, flat, hilbert_schmidt, ordered
+from simplexcub.measures import bures, dirichlet, flat, hilbert_schmidt
 from simplexcub.rule import Provenance, Rule, rule_from_orbits
 from simplexcub.table import read
 from simplexcub.table.formats import render
@@ -252,8 +252,8 @@ def test_other_spaces_and_measures_are_refused():
     rule = radon()
     with pytest.raises(InputError, match="N = 3"):
         prove(rule, measure=flat(4))
-    with pytest.raises(InputError, match="space"):
-        prove(replace(rule, space="ordered", measure=ordered(flat(3))))
+    with pytest.raises(InputError, match=r"ordered moments .* got bures\(N=3\)"):
+        prove(replace(rule, space="ordered"), measure=bures(3))
 
 
 def test_radon_is_no_rule_for_another_measure():

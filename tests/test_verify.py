@@ -10,7 +10,7 @@ from mpmath import mp, mpf
 import simplexcub
 from simplexcub.decimals import to_decimal
 from simplexcub.errors import InputError
-from simplexcub.measures import dirichlet, flat, hilbert_schmidt, induced
+from simplexcub.measures import bures, dirichlet, flat, hilbert_schmidt, induced
 from simplexcub.rule import Provenance, Rule, rule_from_orbits
 from simplexcub.verify import lower_bound, verify
 from simplexcub.verify.bounds import dimension
@@ -305,5 +305,5 @@ def test_bad_arguments():
         verify(radon(), measure=flat(4))
     with pytest.raises(InputError, match="max_degree must be at least the claimed degree 5; got 4"):
         verify(radon(), max_degree=4)
-    with pytest.raises(InputError, match="space must be all or symmetric"):
-        verify(rule(flat(3), 1, [(Fraction(1, 3),) * 3], [Fraction(1)], space="ordered"))
+    with pytest.raises(InputError, match=r"ordered moments .* got bures\(N=3\)"):
+        verify(rule(bures(3), 1, [(Fraction(1, 3),) * 3], [Fraction(1)], space="ordered"))

@@ -18,6 +18,8 @@ from simplexcub.rule import Rule
 from simplexcub.search import solve
 from simplexcub.symmetry import NAMES
 from simplexcub.table import efficiency, format_of, render, save
+from simplexcub.table.describe import counted, noun
+from simplexcub.table.record import SPACES
 from simplexcub.verify import verify
 
 EXAMPLE = "simplexcub solve hilbert-schmidt -N 3 -t 7 -o hs.json"
@@ -28,7 +30,11 @@ def add_options(parser: argparse.ArgumentParser) -> None:
     add_measure(parser)
     parser.add_argument("-t", "--degree", type=whole, required=True, metavar="T", help="degree of exactness")
     parser.add_argument(
-        "--space", choices=("all",), default="all", help="polynomials to be exact for: all of degree ≤ T (default)"
+        "--space",
+        choices=SPACES,
+        default="all",
+        help="polynomials of degree ≤ T to be exact for: all (default); symmetric ones, with one node for each orbit;"
+        " or all of the ordered spectrum λ1 ≥ … ≥ λN",
     )
     parser.add_argument(
         "--symmetry",
@@ -71,7 +77,7 @@ def run(args: argparse.Namespace) -> int:
     rule = rule.verified(report.verification)
     if rule.provenance.method == "conical product":
         complain(
-            f"no smaller rule was found in time; this is the conical product rule of {len(rule)} nodes."
+            f"no smaller rule was found in time; this is the conical product rule of {counted(len(rule), noun(rule))}."
             " A longer --budget or another --seed may find fewer"
         )
     _deliver(rule, args.output)
@@ -124,4 +130,5 @@ def _summary(rule: Rule) -> str:
     if check:
         share = efficiency(check.lower_bound, len(rule))
         found = f", at least {check.lower_bound} needed (efficiency {share}), residual {check.max_residual}"
-    return f"{rule.measure}, {rule.space}, degree {rule.degree}: {len(rule)} nodes, {rule.digits} digits{found}"
+    size = counted(len(rule), noun(rule))
+    return f"{rule.measure}, {rule.space}, degree {rule.degree}: {size}, {rule.digits} digits{found}"

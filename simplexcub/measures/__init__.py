@@ -20,6 +20,7 @@ from simplexcub.measures.build import (
     orthogonal,
     symplectic,
 )
+from simplexcub.measures.chamber import Chamber
 from simplexcub.measures.dirichlet import Dirichlet
 from simplexcub.measures.ordered import Ordered, ordered
 from simplexcub.measures.polynomial import PolynomialDensity, polynomial_density
@@ -29,6 +30,7 @@ __all__ = [
     "FAMILIES",
     "BetaEnsemble",
     "BuresHall",
+    "Chamber",
     "Dirichlet",
     "FloatArray",
     "Induced",

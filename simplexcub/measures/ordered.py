@@ -113,6 +113,7 @@ def ordered(measure: Measure) -> Ordered:
         raise InputError(
             "ordered moments must be of a symmetric measure with a polynomial density on the chamber",
             measure,
-            "These are flat, equal integer alpha, hilbert-schmidt, induced, and orthogonal with K - N odd.",
+            "These are flat, equal integer alpha, hilbert-schmidt, induced, and orthogonal with K - N odd; for others"
+            " there are no exact moments here. Space symmetric serves functions that do not depend on the order.",
         )
     return Ordered(measure, int(beta), int(c))

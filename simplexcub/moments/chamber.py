@@ -89,6 +89,19 @@ def chamber_moment(exponents: tuple[int, ...], beta: int, c: int) -> Fraction:
     return Fraction(total, _weighted((0,) * n, beta, c) * scale**degree) / rising(trace, degree)
 
 
+def barycentric_moment(exponents: tuple[int, ...], beta: int, c: int) -> Fraction:
+    """E[Π b_k^{a_k}] of the ordered spectrum's barycentric coordinates in the chamber, b_k = k (λ_k − λ_{k+1}).
+
+    Examples
+    --------
+    >>> barycentric_moment((1, 0), beta=0, c=0)
+    Fraction(1, 2)
+    """
+    n = len(exponents)
+    trace = n * (c + 1) + beta * n * (n - 1) // 2
+    return Fraction(_weighted(exponents, beta, c), _weighted((0,) * n, beta, c)) / rising(trace, sum(exponents))
+
+
 def _nested_integral(exponents: tuple[int, ...], beta: int, c: int) -> Fraction:
     n = len(exponents)
     terms: dict[tuple[int, ...], Fraction] = {

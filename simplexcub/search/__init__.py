@@ -6,7 +6,6 @@ import datetime
 from collections.abc import Callable
 from concurrent.futures import Executor
 from pathlib import Path
-from typing import Literal
 
 import numpy as np
 from mpmath import mp, mpf
@@ -14,20 +13,23 @@ from mpmath import mp, mpf
 import simplexcub
 from simplexcub.errors import InputError, NothingFound
 from simplexcub.invariants import invariant_basis
-from simplexcub.measures import Dirichlet, Measure
-from simplexcub.rule import Provenance, Rule, rule_from_nodes, rule_from_orbits
+from simplexcub.measures import Chamber, Dirichlet, Measure, ordered
+from simplexcub.rule import Provenance, Rule, Space, rule_from_nodes, rule_from_orbits, rule_from_representatives
 from simplexcub.search.conical import MOST_NODES, conical_count, conical_rule
 from simplexcub.search.driver import Budget, Found, Progress, Search
 from simplexcub.search.gauss import gauss_rule
 from simplexcub.search.levenberg import Overdue
+from simplexcub.search.patterns import PatternSearch
 from simplexcub.search.record import Record
+from simplexcub.search.spaces import folded, gauss_pairs, unfolded
 from simplexcub.search.system import FloatArray, Problem
 from simplexcub.search.workers import Workers, local_workers
-from simplexcub.symmetry import Group, named_group
+from simplexcub.symmetry import Group, Spectra, named_group, spectra
 
 __all__ = ["Progress", "product_rule", "solve"]
 
-_SPACES = ("all",)
+_SPACES = ("all", "symmetric", "ordered")
+_SPARE_DIGITS = 10  # of the chamber's coordinates, which are added up
 # Node counts measured over degrees 3 to 12: few symmetries first, since that is where the fewest nodes were found.
 _PROMISE = {
     3: ("cyclic", "stabiliser", "none", "full"),
@@ -42,7 +44,7 @@ def solve(
     measure: Measure,
     degree: int,
     *,
-    space: Literal["all"] = "all",
+    space: Space = "all",
     symmetry: str = "full",
     digits: int = 50,
     seed: int = 0,
@@ -52,9 +54,9 @@ def solve(
     resume: str | Path | None = None,
     progress: Callable[[Progress], None] | None = None,
 ) -> Rule:
-    """A rule with positive weights and nodes inside, exact for all polynomials of the given degree.
+    """A rule with positive weights and nodes inside, exact for all polynomials of the given degree in a space.
 
-    N = 2 gives the Gauss rule. For N ≥ 3 a rule with as few nodes as can be is searched; if the budget ends before any
+    N = 2 gives a Gauss rule. For N ≥ 3 a rule with as few nodes as can be is searched; if the budget ends before any
     is found, the conical-product rule is returned instead, and ``rule.provenance.method`` says so.
 
     Parameters
@@ -62,13 +64,15 @@ def solve(
     measure : Measure
     degree : int
         At least 1. A Gauss rule reaches the next odd degree, which is then the rule's degree.
-    space : {"all"}
-        What the rule is exact for: every polynomial.
+    space : {"all", "symmetric", "ordered"}
+        What the rule is exact for: every polynomial; every symmetric one, with as few representatives of orbits as can
+        be; every one of the ordered spectrum λ_1 ≥ … ≥ λ_N, for a measure with exact moments there.
     symmetry : str
         Permutations that leave the node set unchanged: ``full``; ``alternating``, ``dihedral``, ``cyclic``; ``klein``
         (N = 4); ``stabiliser`` of the last component; ``product-2-1`` and the like, within consecutive blocks;
         ``none``. Fewer symmetries often need fewer nodes. ``best`` tries several and keeps the fewest nodes. For a
-        Dirichlet measure with unequal α, ``full`` means the permutations among components of equal α.
+        Dirichlet measure with unequal α, ``full`` means the permutations among components of equal α. Only space
+        ``all`` has a choice.
     digits : int
         Significant digits of nodes and weights, at least 5.
     seed : int
@@ -87,7 +91,8 @@ def solve(
     Raises
     ------
     InputError
-        A parameter out of range, or a symmetry that the measure does not have.
+        A parameter out of range, a symmetry that the measure or the space does not have, or a measure without exact
+        moments of its ordered spectrum.
     NothingFound
         Nothing was found and the conical product would be unreasonably large.
 
@@ -104,7 +109,25 @@ def solve(
     ('0.2113248654', '0.7886751346')
     """
     _check(degree=degree, space=space, digits=digits, seed=seed, budget=budget, jobs=jobs)
-    groups = _groups(measure, symmetry)
+    if space != "all" and symmetry not in ("full", "best", *(("none",) if space == "ordered" else ())):
+        raise InputError(f"symmetry must be full for rules of space {space}", symmetry, "Leave --symmetry out.")
+    if space == "ordered":
+        chamber = Chamber(ordered(measure))
+        rule = solve(
+            chamber,
+            degree,
+            digits=digits + _SPARE_DIGITS,
+            seed=seed,
+            budget=budget,
+            jobs=jobs,
+            executor=executor,
+            resume=resume,
+            progress=progress,
+        )
+        return unfolded(rule, measure, digits)
+    groups: list[Group] = [spectra(measure.N)] if space == "symmetric" else _groups(measure, symmetry)
+    if measure.N == 2 and space == "symmetric":
+        return gauss_pairs(measure, degree, digits=digits, provenance=_provenance(seed, "Gauss"))
     if measure.N == 2:
         return product_rule(measure, degree, digits=digits, seed=seed)
     record = None if resume is None else Record(resume)
@@ -116,7 +139,8 @@ def solve(
         found = _search(groups, measure, degree, digits, seed, budget, workers, progress)
     if found is not None:
         return _rule(found, digits, _provenance(seed, "orbit search"))
-    return product_rule(measure, degree, digits=digits, seed=seed)
+    product = product_rule(measure, degree, digits=digits, seed=seed)
+    return folded(product) if space == "symmetric" else product
 
 
 def product_rule(measure: Measure, degree: int, *, digits: int = 50, seed: int = 0) -> Rule:
@@ -162,7 +186,8 @@ def _search(
     for i, group in enumerate(groups):
         share = Budget((budget - allowance.elapsed) / (len(groups) - i))
         most = MOST_NODES if best is None else best.nodes - 1
-        search = Search(
+        kind = PatternSearch if isinstance(group, Spectra) else Search
+        search = kind(
             Problem(measure, degree, group),
             digits=digits,
             seed=seed,
@@ -187,7 +212,7 @@ def _search(
 
 def _known(measure: Measure, degree: int, group: Group, best: Found | None) -> list[tuple[FloatArray, FloatArray]]:
     """Rules that a search without symmetry can set out from: the best so far, or a conical product if that is small."""
-    if group.generators:
+    if group.generators or isinstance(group, Spectra):
         return []
     if best is not None:
         nodes, weights = _written_out(best, 16)
@@ -202,6 +227,9 @@ def _known(measure: Measure, degree: int, group: Group, best: Found | None) -> l
 
 def _rule(found: Found, digits: int, provenance: Provenance) -> Rule:
     problem = found.problem
+    if isinstance(problem.group, Spectra):
+        orbits = [(t.multiplicities, values, weight) for t, values, weight in found.orbits]
+        return rule_from_representatives(problem.measure, problem.degree, orbits, digits=digits, provenance=provenance)
     if problem.group.is_full:
         orbits = [(t.multiplicities, values, weight) for t, values, weight in found.orbits]
         return rule_from_orbits(problem.measure, problem.degree, orbits, digits=digits, provenance=provenance)

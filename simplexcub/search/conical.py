@@ -19,6 +19,7 @@ from simplexcub.rule import Provenance, Rule, rule_from_nodes
 from simplexcub.search.gauss import beta_gauss
 
 MOST_NODES = 50_000
+_TOLD_IN_FULL = 10**12
 
 
 def conical_count(measure: Measure, degree: int) -> int:
@@ -38,9 +39,10 @@ def conical_rule(measure: Measure, degree: int, *, digits: int, provenance: Prov
     """
     count = conical_count(measure, degree)
     if count > MOST_NODES:
+        told = str(count) if count < _TOLD_IN_FULL else f"some 10^{len(str(count)) - 1}"
         raise NothingFound(
             f"rule of degree {degree} for {measure}",
-            f"the search found none, and the conical product would need {count} nodes",
+            f"the search found none, and the conical product would need {told} nodes",
             "Give the search a larger budget, or ask a lower degree.",
         )
     alpha, vandermonde = measure.over_dirichlet()

@@ -15,7 +15,8 @@ from math import comb
 import numpy as np
 
 from simplexcub.invariants import invariant_basis
-from simplexcub.symmetry import Group, OrbitType
+from simplexcub.moments.partitions import count_partitions
+from simplexcub.symmetry import Group, OrbitType, Spectra
 
 Counts = tuple[tuple[OrbitType, int], ...]  # (orbit type, how many orbits), types with none left out
 Condition = tuple[frozenset[OrbitType], int]
@@ -41,6 +42,8 @@ def random_values(type_: OrbitType, points: np.ndarray) -> np.ndarray:
 def conditions(group: Group, degree: int) -> list[Condition]:
     """(types, need): the orbits of these types together must have at least `need` unknowns."""
     types = group.types
+    if isinstance(group, Spectra):
+        return [(frozenset(types), count_partitions(degree, group.n))]
     basis = invariant_basis(group, degree)
     rng = np.random.default_rng(0)
     spans = {}
@@ -103,10 +106,12 @@ def possible_counts(group: Group, degree: int, nodes: int) -> list[Counts]:
 
 
 def fewest_nodes(group: Group, degree: int) -> int:
-    """No positive rule inside has fewer nodes: the dimension of the polynomials of half the degree.
+    """No positive rule inside has fewer nodes: the dimension of the polynomials of half the degree, or symmetric ones.
 
     Reference: A. H. Stroud, *Approximate Calculation of Multiple Integrals* (1971), 3.15.
     """
+    if isinstance(group, Spectra):
+        return count_partitions(degree // 2, group.n)  # parts of 1 stand for what is missing to the degree
     return comb(degree // 2 + group.n - 1, group.n - 1)
 
 

@@ -11,10 +11,10 @@ from dataclasses import dataclass
 import numpy as np
 from numpy.typing import NDArray
 
-from simplexcub.invariants import Basis, invariant_basis, mean_vector
+from simplexcub.invariants import Basis, basis_for, mean_vector
 from simplexcub.measures import Measure
 from simplexcub.search.counts import Counts, random_values
-from simplexcub.symmetry import Group, OrbitType
+from simplexcub.symmetry import Group, OrbitType, Spectra
 
 FloatArray = NDArray[np.float64]
 Parts = dict[OrbitType, list[tuple[float, FloatArray]]]  # orbits of one candidate: weight, distinct coordinates
@@ -30,7 +30,7 @@ class Problem:
 
     @property
     def basis(self) -> Basis:
-        return invariant_basis(self.group, self.degree)
+        return basis_for(self.group, self.degree, self.measure)
 
 
 @dataclass(frozen=True)
@@ -105,11 +105,17 @@ class System:
         """Random candidates inside the simplex, weights in proportion to orbit size but for noise."""
         u = np.empty((batch, self.size))
         for block in self.blocks:
-            points = rng.dirichlet(np.ones(self.problem.group.n), (batch, block.count))
+            points = self._points(rng, batch * block.count).reshape(batch, block.count, -1)
             u[:, block.coordinates] = random_values(block.type, points)[..., :-1].reshape(batch, -1)
             u[:, block.weights] = block.type.size * rng.uniform(0.5, 1.5, (batch, block.count))
         u[:, : self.orbits] /= u[:, : self.orbits].sum(axis=1, keepdims=True)
         return u
+
+    def _points(self, rng: np.random.Generator, count: int) -> FloatArray:
+        """Where starts come from: anywhere on the simplex; for spectra, samples of the measure, smallest first."""
+        if isinstance(self.problem.group, Spectra):
+            return np.sort(self.problem.measure.sample(rng, count), axis=1)
+        return rng.dirichlet(np.ones(self.problem.group.n), count)
 
     def slack(self, u: FloatArray) -> FloatArray:
         """Distances of weights and coordinates from zero; shape (B, constraints)."""
@@ -119,10 +125,12 @@ class System:
         """How far each unknown may move before its orbit meets the boundary, relative to others; shape (B, size)."""
         out = np.empty_like(u)
         out[:, : self.orbits] = u[:, : self.orbits] * self.orbits
+        # Spectra of many components hardly fluctuate, so no coordinate moves by more than a share of itself.
+        stretch = 1.0 if isinstance(self.problem.group, Spectra) else float(self.problem.group.n)
         for block in self.blocks:
             values = self.values(u, block)
             room = np.minimum(values[..., :-1], values[..., -1:])
-            out[:, block.coordinates] = room.reshape(len(u), -1) * self.problem.group.n
+            out[:, block.coordinates] = room.reshape(len(u), -1) * stretch
         return out
 
     def split(self, u: FloatArray) -> Parts:

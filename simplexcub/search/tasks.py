@@ -14,8 +14,10 @@ from simplexcub.search.counts import Counts, node_count
 from simplexcub.search.eliminate import Walk, advance, set_out
 from simplexcub.search.levenberg import Overdue, solve_batch
 from simplexcub.search.system import FloatArray, Problem, System
+from simplexcub.symmetry import Spectra
 
 _CHUNK_STARTS, _CHUNK_NUMBERS = 200, 4_000_000  # starts per chunk, fewer where their Jacobians hold more numbers
+_SPECTRUM_STARTS = 40  # of spectra, which solve sooner or not at all
 _LEG_NUMBERS = 40_000  # entries of all square matrices that one leg works through
 _MOST_KEPT = 20  # solutions of a chunk that are passed on
 
@@ -37,7 +39,8 @@ class Chunk:
     def run(self) -> FloatArray:
         """Solutions inside the simplex, the ones furthest from the boundary first; shape (S, unknowns)."""
         system = System(self.problem, self.counts)
-        starts = int(np.clip(_CHUNK_NUMBERS // (system.size * len(system.basis)), 4, _CHUNK_STARTS))
+        most = _SPECTRUM_STARTS if isinstance(self.problem.group, Spectra) else _CHUNK_STARTS
+        starts = int(np.clip(_CHUNK_NUMBERS // (system.size * len(system.basis)), 4, most))
         solved = solve_batch(system, system.starts(_generator(self.key), starts))
         return solved[np.argsort(-system.slack(solved).min(axis=1, initial=np.inf))][:_MOST_KEPT]
 

@@ -13,7 +13,7 @@ from typing import NamedTuple
 
 from simplexcub.rule import Rule
 from simplexcub.table import tex
-from simplexcub.table.describe import Fact, counted, facts, heading
+from simplexcub.table.describe import Fact, counted, facts, heading, measure_name, noun
 from simplexcub.table.sheet import Entry, Sheet, sheet
 from simplexcub.table.sources import Source, numbered, sources
 
@@ -118,7 +118,7 @@ def _caption(rule: Rule, page: Sheet, said: dict[str, Fact], *, example: bool) -
     for name in ("w", "W"):
         legend = legend.replace(f" {name} is ", f" ${name}$ is ").replace(f"; {name} is", f"; ${name}$ is")
     return (
-        f"{tex.prose(heading(rule).split(', degree')[0])}: {counted(len(rule), 'node')}{orbits}, "
+        f"{tex.prose(measure_name(rule.measure))}: {counted(len(rule), noun(rule))}{orbits}, "
         f"exact for {said['exact for'].tex}. Density {said['density'].tex}, of total mass~1; weights sum to~1. "
         f"Numbers are rounded to {rule.digits} significant digits. {_formulas(legend)}"
     )

@@ -2,7 +2,8 @@
 
 Each wanted rule is searched for, verified, and kept if no table of its kind has as few nodes. A first run with
 ``--symmetry full`` makes the fully symmetric rules; a second with ``--symmetry best`` adds those that need fewer nodes
-with less symmetry. The index is remade from the files at the end, also when the run is interrupted.
+with less symmetry. ``--space symmetric`` and ``--space ordered`` make the rules for functions of the spectrum. The
+index is remade from the files at the end, also when the run is interrupted.
 """
 
 from __future__ import annotations
@@ -15,28 +16,45 @@ from pathlib import Path
 
 from simplexcub.errors import NothingFound, SimplexcubError
 from simplexcub.measures import FAMILIES, Measure, bures, flat, hilbert_schmidt
-from simplexcub.rule import Rule
+from simplexcub.rule import Rule, Space
 from simplexcub.search import solve
 from simplexcub.table.describe import counted
 from simplexcub.table.files import read_text
 from simplexcub.table.formats import save
 from simplexcub.table.reading import parse
+from simplexcub.table.record import SPACES
 from simplexcub.table.shipped import add, folder, kind_for, place_for, reindex
 from simplexcub.verify import verify
 
 log = logging.getLogger(__name__)
 
 DIGITS = 50
-# Degrees per number of components. A Gauss rule (N = 2) has odd degree.
-DEGREES = {2: range(1, 42, 2), 3: range(1, 31), 4: range(1, 15), 5: range(1, 9), 6: range(1, 8)}
+# Degrees per space and number of components. Gauss rules (N = 2) have odd degree, on symmetric functions 4 m − 1.
+DEGREES: dict[Space, dict[int, Sequence[int]]] = {
+    "all": {2: range(1, 42, 2), 3: range(1, 31), 4: range(1, 15), 5: range(1, 9), 6: range(1, 8)},
+    "symmetric": {
+        **{2: range(3, 44, 4), 3: range(1, 21), 4: range(1, 13), 5: range(1, 13), 6: range(1, 13)},
+        **dict.fromkeys((8, 16, 32, 64), (6, 8, 10)),
+    },
+    "ordered": {2: range(1, 20, 2), 3: range(1, 11), 4: range(1, 7)},
+}
+LARGEST_SIMPLEX = 6  # more components only as spectra of states
+SIZES = sorted({n for degrees in DEGREES.values() for n in degrees})
 
 
 def targets(
-    families: Collection[str] = (), sizes: Collection[int] = (), only: Collection[int] = ()
+    families: Collection[str] = (),
+    sizes: Collection[int] = (),
+    only: Collection[int] = (),
+    space: Space = "all",
 ) -> Iterator[tuple[Measure, int]]:
     """The (measure, degree) pairs of the shipped set, cheapest first; empty arguments stand for all."""
-    for n, degrees in DEGREES.items():
-        for measure in (flat(n), hilbert_schmidt(n), bures(n)):
+    for n, degrees in DEGREES[space].items():
+        measures: tuple[Measure, ...] = (hilbert_schmidt(n),)
+        if n <= LARGEST_SIMPLEX:
+            # Bures has no exact moments of the ordered spectrum.
+            measures = (flat(n), hilbert_schmidt(n), *(() if space == "ordered" else (bures(n),)))
+        for measure in measures:
             if (not families or measure.family in families) and (not sizes or n in sizes):
                 yield from ((measure, degree) for degree in degrees if not only or degree in only)
 
@@ -48,6 +66,7 @@ def build(
     budget: float,
     seed: int = 0,
     jobs: int = 1,
+    space: Space = "all",
     symmetry: str = "full",
     only_missing: bool = False,
     say: Callable[[str], None] = log.info,
@@ -62,7 +81,7 @@ def build(
         The folder of tables.
     budget : float
         Seconds of search for each rule.
-    seed, jobs, symmetry
+    seed, jobs, space, symmetry
         Passed to the search; with less than full symmetry only rules with fewer nodes than every other are kept.
     only_missing : bool
         Skip what has a table already.
@@ -78,17 +97,26 @@ def build(
     try:
         for measure, degree in wanted:
             name = f"{measure}, degree {degree}"
-            if only_missing and _exists(measure, degree, where):
+            if only_missing and _exists(measure, degree, where, space):
                 continue
             try:
-                rule = solve(measure, degree, symmetry=symmetry, digits=DIGITS, seed=seed, budget=budget, jobs=jobs)
+                rule = solve(
+                    measure,
+                    degree,
+                    space=space,
+                    symmetry=symmetry,
+                    digits=DIGITS,
+                    seed=seed,
+                    budget=budget,
+                    jobs=jobs,
+                )
             except NothingFound:
                 say(f"{name}: no rule in {budget:g} s")
                 continue
-            if rule.provenance.method == "conical product":
+            if rule.provenance.method.startswith("conical product"):
                 say(f"{name}: no rule in {budget:g} s")
                 continue
-            if rule.symmetry != "full" and not _fewest(rule, where):
+            if space == "all" and rule.symmetry != "full" and not _fewest(rule, where):
                 say(f"{name}: {counted(len(rule), 'node')}, no fewer than with full symmetry")
                 continue
             report = verify(rule, prove=True)
@@ -115,8 +143,8 @@ def refresh(where: Path, say: Callable[[str], None] = log.info) -> None:
     reindex(where)
 
 
-def _exists(measure: Measure, degree: int, where: Path) -> bool:
-    kind = kind_for("all", "full", degree)
+def _exists(measure: Measure, degree: int, where: Path, space: Space) -> bool:
+    kind = kind_for(space, "none" if space == "ordered" else "full", degree)
     return any((where / place_for(measure)).glob(f"{kind}-*.json"))
 
 
@@ -136,9 +164,10 @@ def main(argv: Sequence[str] | None = None) -> int:
     logging.basicConfig(level=logging.INFO, format="%(message)s", stream=sys.stderr)
     parser = argparse.ArgumentParser(prog="python -m simplexcub.table.build", description=__doc__)
     parser.add_argument("--measure", choices=FAMILIES, action="append", default=[], help="only this family")
-    parser.add_argument("-N", type=int, choices=sorted(DEGREES), action="append", default=[], help="only this N")
+    parser.add_argument("-N", type=int, choices=SIZES, action="append", default=[], help="only this N")
     parser.add_argument("-t", type=int, action="append", default=[], metavar="DEGREE", help="only this degree")
     parser.add_argument("--budget", type=float, default=60.0, metavar="SECONDS", help="for each rule (default 60)")
+    parser.add_argument("--space", choices=SPACES, default="all", help="what the rules are exact for (default all)")
     parser.add_argument("--symmetry", default="full", help="of the node sets: full (default), best, or a group's name")
     parser.add_argument("--seed", type=int, default=0, help="of the search (default 0)")
     parser.add_argument("--jobs", type=int, default=1, help="processes (default 1)")
@@ -152,11 +181,12 @@ def main(argv: Sequence[str] | None = None) -> int:
             refresh(options.folder)
             return 0
         build(
-            () if options.index else targets(options.measure, options.N, options.t),
+            () if options.index else targets(options.measure, options.N, options.t, options.space),
             where=options.folder,
             budget=options.budget,
             seed=options.seed,
             jobs=options.jobs,
+            space=options.space,
             symmetry=options.symmetry,
             only_missing=options.only_missing,
         )

@@ -16,6 +16,7 @@ EXACT_FOR = {
     "symmetric": "every symmetric polynomial of degree ≤ {}",
     "ordered": "every polynomial of degree ≤ {} in the ordered spectrum λ1 ≥ … ≥ λN",
 }
+_KINDS = {"all": "", "symmetric": "symmetric ", "ordered": "ordered "}
 _NAMES = {
     "flat": "Flat measure",
     "dirichlet": "Dirichlet measure",
@@ -66,7 +67,12 @@ class Fact(NamedTuple):
 
 def heading(rule: Rule) -> str:
     """What the rule is, in a few words."""
-    return f"{measure_name(rule.measure)}, degree {rule.degree}, {counted(len(rule), 'node')}"
+    return f"{measure_name(rule.measure)}, {_KINDS[rule.space]}degree {rule.degree}, {counted(len(rule), noun(rule))}"
+
+
+def noun(rule: Rule) -> str:
+    """What the points of a rule are: nodes, or representatives of orbits."""
+    return "representative" if rule.space == "symmetric" else "node"
 
 
 def measure_name(measure: Measure) -> str:
@@ -126,7 +132,7 @@ def facts(rule: Rule) -> list[Fact]:
         _fact("symmetry", rule.symmetry),
         _fact("weights", _weights(rule)),
         _fact("digits", str(rule.digits)),
-        *_checks(rule.verification, len(rule)),
+        *_checks(rule.verification, rule),
         _fact("made by", " ".join(made_by.split())),
         _fact("method", " ".join(source.method.split()) or "not stated"),
     ]
@@ -157,9 +163,9 @@ def _fact(label: str, text: str) -> Fact:
 
 def _nodes(rule: Rule) -> str:
     orbits = f" in {counted(len(rule.orbits), 'orbit')}" if rule.orbits else ""
-    if rule.space != "all":
-        orbits = ", one ordered spectrum for each orbit"
-    return f"{len(rule)}{orbits}"
+    if rule.space == "symmetric":
+        return f"{counted(len(rule), noun(rule))}, one ordered spectrum for each orbit"
+    return f"{len(rule)}, each an ordered spectrum" if rule.space == "ordered" else f"{len(rule)}{orbits}"
 
 
 def _weights(rule: Rule) -> str:
@@ -172,9 +178,11 @@ def efficiency(bound: int, nodes: int) -> str:
     return f"{bound / nodes:.2f}"
 
 
-def _checks(found: Verification | None, nodes: int) -> list[Fact]:
+def _checks(found: Verification | None, rule: Rule) -> list[Fact]:
     if found is None:
         return []
+    nodes = len(rule)
+    share = efficiency(found.lower_bound, nodes)
     worst = monomial(found.worst_exponents)
     tex_worst = "".join(
         rf"\lambda_{{{i}}}" + (f"^{{{a}}}" if a > 1 else "") for i, a in enumerate(found.worst_exponents, 1) if a
@@ -188,8 +196,8 @@ def _checks(found: Verification | None, nodes: int) -> list[Fact]:
         ),
         _fact("first failure", f"at degree {found.fails_at_degree}"),
         _fact("inside", "all nodes lie on the simplex" if found.inside else "not all nodes lie on the simplex"),
-        _fact("lower bound", f"no rule of this degree has fewer than {counted(found.lower_bound, 'node')}"),
-        _fact("efficiency", f"{efficiency(found.lower_bound, nodes)} = {found.lower_bound}/{nodes}, bound / nodes"),
+        _fact("lower bound", f"no rule of this degree has fewer than {counted(found.lower_bound, noun(rule))}"),
+        _fact("efficiency", f"{share} = {found.lower_bound}/{nodes}, bound / {noun(rule)}s"),
     ]
     if found.proof is not None:
         checks.append(_proof(found.proof))

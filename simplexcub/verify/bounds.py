@@ -3,13 +3,13 @@
 Linear bound. If a rule of degree 2s had fewer nodes than dim P_s, some p ≠ 0 in P_s would vanish on all of them, and
 the rule would average p² to 0, but E[p²] > 0. So M ≥ dim P_s for degrees 2s and 2s+1, with
 
-    space ``all``        dim P_s = C(s + N − 1, N − 1),
-    space ``symmetric``  dim P_s = number of partitions of integers ≤ s into parts from {2, …, N}.
+    space ``all``, ``ordered``  dim P_s = C(s + N − 1, N − 1),
+    space ``symmetric``         dim P_s = number of partitions of integers ≤ s into parts from {2, …, N}.
 
-Rank form of Möller's bound, for degree 2s+1 and space ``all``. Let V hold a basis of P_s orthonormal for the measure at
-the nodes and W the weights, so that Vᵀ W V = 1, and let X_u be the diagonal matrix of a linear coordinate u at the
-nodes. The multiplication operators compressed to P_s, J_u = Vᵀ W X_u V, are known from moments of degree 2s+1. With the
-projector Π = V Vᵀ W of rank D = dim P_s,
+Rank form of Möller's bound, for degree 2s+1 and spaces ``all`` and ``ordered``. Let V hold a basis of P_s orthonormal
+for the measure at the nodes and W the weights, so that Vᵀ W V = 1, and let X_u be the diagonal matrix of a linear
+coordinate u at the nodes. The multiplication operators compressed to P_s, J_u = Vᵀ W X_u V, are known from moments of
+degree 2s+1. With the projector Π = V Vᵀ W of rank D = dim P_s,
 
     [J_u, J_v] = Vᵀ W ( X_v (1 − Π) X_u − X_u (1 − Π) X_v ) V,
 
@@ -37,7 +37,7 @@ import numpy as np
 from numpy.typing import NDArray
 
 from simplexcub.errors import InputError
-from simplexcub.measures import Measure
+from simplexcub.measures import Measure, ordered
 from simplexcub.rule import Space
 from simplexcub.verify.residuals import compositions, mean
 
@@ -53,8 +53,9 @@ IntArray = NDArray[np.int64]
 def lower_bound(measure: Measure, degree: int, space: Space = "all") -> int:
     """No rule of this degree has fewer nodes than this.
 
-    For odd degrees and space ``all`` it is Möller's bound in its rank form as long as dim P_s ≤ 350, at most 4000
-    moments are needed and, for eigenvalue measures, N ≤ 5; beyond these sizes, and otherwise, the linear bound.
+    For odd degrees and spaces ``all`` and ``ordered`` it is Möller's bound in its rank form as long as dim P_s ≤
+    350, at most 4000 moments are needed and, for eigenvalue measures, N ≤ 5; beyond these sizes, and otherwise, the
+    linear bound.
 
     Parameters
     ----------
@@ -71,7 +72,7 @@ def lower_bound(measure: Measure, degree: int, space: Space = "all") -> int:
     Raises
     ------
     InputError
-        A negative degree or an unknown space.
+        A negative degree, an unknown space, or a measure without exact moments of its ordered spectrum.
 
     Examples
     --------
@@ -85,8 +86,10 @@ def lower_bound(measure: Measure, degree: int, space: Space = "all") -> int:
         raise InputError("space must be one of all, symmetric, ordered", space)
     s = degree // 2
     linear = dimension(measure.N, s, space)
-    if degree % 2 == 0 or space != "all" or measure.N == 2:
+    if degree % 2 == 0 or space == "symmetric" or measure.N == 2:
         return linear
+    if space == "ordered":
+        measure = ordered(measure)
     moments = math.comb(degree + measure.N - 1, measure.N - 1)
     if linear > LARGEST_BASIS or moments > MOST_MOMENTS:
         return linear

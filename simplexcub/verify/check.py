@@ -11,7 +11,7 @@ from collections.abc import Callable
 from dataclasses import dataclass
 
 from simplexcub.errors import InputError
-from simplexcub.measures import Measure
+from simplexcub.measures import Measure, ordered
 from simplexcub.rule import Rule, Verification
 from simplexcub.verify.bounds import dimension, lower_bound
 from simplexcub.verify.printed import Printed, read_printed
@@ -88,7 +88,6 @@ def verify(
     Parameters
     ----------
     rule : Rule
-        In space ``all`` or ``symmetric``.
     measure : Measure, optional
         What to hold it against; the rule's own measure by default.
     max_degree : int, optional
@@ -107,8 +106,8 @@ def verify(
     Raises
     ------
     InputError
-        A measure with another N, a `max_degree` below the claimed degree, a space that cannot be verified, or an entry
-        that is not a decimal number.
+        A measure with another N, or without exact moments of its ordered spectrum where the rule is for that; a
+        `max_degree` below the claimed degree, or an entry that is not a decimal number.
 
     Notes
     -----
@@ -133,7 +132,7 @@ def verify(
     printed = read_printed(rule)
     off_simplex = tuple(node_faults(printed))
     reasons = [*weight_faults(printed, equal=rule.equal_weights), *off_simplex, *claim_faults(rule, printed)]
-    trial = _Trial(rule, against, printed, progress)
+    trial = _Trial(rule, ordered(against) if rule.space == "ordered" else against, printed, progress)
     fails_at, judged, wrong = trial.search(max_degree, nested=not reasons)
     if judged.ratio > trial.slack:
         reasons.append(

@@ -5,7 +5,8 @@ from __future__ import annotations
 from collections.abc import Iterator
 from dataclasses import replace
 
-from simplexcub.measures import Measure, bures, dirichlet, flat, hilbert_schmidt, induced
+from simplexcub.errors import InputError
+from simplexcub.measures import Measure, bures, dirichlet, flat, hilbert_schmidt, induced, ordered
 from simplexcub.rule import Rule
 from simplexcub.verify.check import Report, verify
 
@@ -28,8 +29,18 @@ def match(rule: Rule) -> list[Report]:
     Parameters
     ----------
     rule : Rule
-        In space ``all`` or ``symmetric``.
+        In space ``ordered`` measures without exact moments of the ordered spectrum are left out.
     """
     bare = replace(rule, degree=0, orbits=(), equal_weights=False)
-    found = [verify(replace(bare, measure=measure)) for measure in candidates(rule.measure.N)]
+    found = [verify(replace(bare, measure=measure)) for measure in candidates(rule.measure.N) if _fits(measure, rule)]
     return sorted(found, key=lambda report: -report.exact_degree)
+
+
+def _fits(measure: Measure, rule: Rule) -> bool:
+    if rule.space != "ordered":
+        return True
+    try:
+        ordered(measure)
+    except InputError:
+        return False
+    return True

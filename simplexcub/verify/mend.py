@@ -38,7 +38,6 @@ def mend(rule: Rule, *, measure: Measure | None = None, degree: int | None = Non
     Parameters
     ----------
     rule : Rule
-        In space ``all`` or ``symmetric``.
     measure : Measure, optional
         The rule's own by default.
     degree : int, optional

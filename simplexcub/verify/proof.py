@@ -12,7 +12,7 @@ from collections.abc import Iterator
 from fractions import Fraction
 
 from simplexcub.errors import InputError
-from simplexcub.measures import Measure
+from simplexcub.measures import Measure, ordered
 from simplexcub.rule import Rule, Space
 from simplexcub.verify.printed import Printed, read_printed
 from simplexcub.verify.proof_newton import NotProven, find_zero
@@ -43,7 +43,6 @@ def prove(
     Parameters
     ----------
     rule : Rule
-        In space ``all`` or ``symmetric``.
     measure : Measure, optional
         What the exact rule averages over; the rule's own measure by default.
     degree : int, optional
@@ -61,7 +60,8 @@ def prove(
     Raises
     ------
     InputError
-        A space that cannot be verified, a measure with another N, or an entry that is not a decimal number.
+        A measure with another N, or without exact moments of its ordered spectrum where the rule is for that, or an
+        entry that is not a decimal number.
 
     Examples
     --------
@@ -76,8 +76,8 @@ def prove(
     against = rule.measure if measure is None else measure
     if against.N != rule.measure.N:
         raise InputError(f"measure must have the rule's N = {rule.measure.N} components", against)
-    if rule.space not in ("all", "symmetric"):
-        raise InputError("space must be all or symmetric for a rule to be proven", rule.space)
+    if rule.space == "ordered":
+        against = ordered(against)
     wanted = rule.degree if degree is None else degree
     printed = read_printed(rule)
     snapped = printed

@@ -75,6 +75,12 @@ def find_structure(printed: Printed, measure: Measure, space: Space) -> Structur
             _full_orbit(k, node, w) for k, (node, w) in enumerate(zip(printed.nodes, printed.weights, strict=True))
         )
         return Structure("full", True, (), orbits)
+    if space == "ordered":
+        # Components that are printed equal stay so: the node keeps to its wall of the chamber.
+        single = tuple(
+            _single(k, node, w) for k, (node, w) in enumerate(zip(printed.nodes, printed.weights, strict=True))
+        )
+        return Structure("none", False, (tuple(range(measure.N)),), single)
     n = len(printed.nodes[0])
     if measure.is_symmetric and _is_full(printed):
         firsts: dict[Node, int] = {}
@@ -103,6 +109,13 @@ def _full_orbit(first: int, node: Node, weight: int) -> Orbit:
     counts = Counter(node)
     values, multiplicities = tuple(counts), tuple(counts.values())
     return _orbit(first, weight, values, multiplicities, (), orbit_size(multiplicities))
+
+
+def _single(first: int, node: Node, weight: int) -> Orbit:
+    counts = Counter(node)
+    values = tuple(counts)
+    image = tuple(values.index(v) for v in node)
+    return _orbit(first, weight, values, tuple(counts.values()), (image,), 1)
 
 
 def _orbit(

@@ -6,6 +6,7 @@ from collections.abc import Iterator
 from dataclasses import dataclass, field
 from decimal import ROUND_CEILING, Context, Decimal
 from fractions import Fraction
+from itertools import pairwise
 from typing import Any
 
 from simplexcub.verify.printed import Printed
@@ -104,6 +105,9 @@ def conclude(
             raise NotProven(f"the weight of node {orbit.first + 1} may have another sign than the printed one")
         if any(v < r for v, r in zip(blocks, room, strict=True)):
             raise NotProven(f"node {orbit.first + 1} of the exact rule may lie outside")
+        gaps = ((a - b, r + s) for (a, r), (b, s) in pairwise(zip(blocks, room, strict=True)))
+        if system.descending and any(gap < needed for gap, needed in gaps):
+            raise NotProven(f"node {orbit.first + 1} of the exact rule may not be in descending order")
     farthest, units = Fraction(0), 0.0
     nodes, shares = [], []
     places = _placements(system.structure, snapped)

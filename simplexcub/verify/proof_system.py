@@ -59,6 +59,7 @@ class System(ABC):
         self.degree = degree
         self.n = measure.N
         self.whole = space == "symmetric"
+        self.descending = space == "ordered"
         self.equal_weight = nodes if equal else None
         self.factor = math.lcm(*range(1, measure.N + 1)) * (nodes if equal else 1)
         self.unknowns = [
@@ -158,15 +159,16 @@ class PowerSumSystem(System):
 
     def __init__(self, structure: Structure, measure: Measure, degree: int, space: Space, equal: bool, nodes: int):
         super().__init__(structure, measure, degree, space, equal, nodes)
+        self.powers = range(2, min(measure.N, degree) + 1)
         self.products = [
             powers
-            for powers in _products(degree, range(2, measure.N + 1))
+            for powers in _products(degree, self.powers)
             if any(powers) or not equal  # equal weights sum to 1 by themselves
         ]
         route = measure.routes[-1]
         self.means = []
         for powers in self.products:
-            parts = [k for k, m in zip(range(2, measure.N + 1), powers, strict=True) for _ in range(m)]
+            parts = [k for k, m in zip(self.powers, powers, strict=True) for _ in range(m)]
             self.means.append(measure.power_sum_moment(parts, route=route))
 
     def _count(self, orbit: Orbit) -> int:
@@ -174,7 +176,7 @@ class PowerSumSystem(System):
 
     def _power_sums(self, orbit: Orbit, values: Sequence[int]) -> list[int]:
         pairs = list(zip(orbit.multiplicities, values, strict=True))
-        return [sum(m * v**k for m, v in pairs) for k in range(2, self.n + 1)]
+        return [sum(m * v**k for m, v in pairs) for k in self.powers]
 
     def _values(self, orbit: Orbit, values: Sequence[int], one: int) -> list[int]:
         sums, count = self._power_sums(orbit, values), self._count(orbit)
@@ -196,7 +198,7 @@ class PowerSumSystem(System):
 
     def _bounds(self, orbit: Orbit, upper: FloatArray, speeds: FloatArray) -> tuple[FloatArray, FloatArray]:
         m = np.array(orbit.multiplicities, dtype=float)
-        k = np.arange(2, self.n + 1)[:, None]
+        k = np.array(self.powers, dtype=int)[:, None]
         sums = (m * upper**k).sum(axis=1)
         first = (k * m * speeds * upper ** (k - 1)).sum(axis=1)
         second = (k * (k - 1) * m * speeds**2 * upper ** (k - 2)).sum(axis=1)

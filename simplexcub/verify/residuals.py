@@ -1,6 +1,7 @@
 r"""Σ_k w_k p(λ^(k)) − E[p] for every monomial of one degree, in integer fixed point.
 
-Space ``all``: p = λ^a with |a| = t. On the simplex Σ λ_i = 1, so these span every polynomial of degree ≤ t.
+Spaces ``all`` and ``ordered``: p = λ^a with |a| = t. On the simplex Σ λ_i = 1, so these span every polynomial of
+degree ≤ t.
 Space ``symmetric``: p = m_ν / #ν, the mean of λ^a over the #ν different orderings a of the partition ν of t; these
 span the symmetric polynomials of degree ≤ t for the same reason. The monomial symmetric functions come from adding one
 variable at a time,
@@ -33,7 +34,6 @@ from operator import mul
 import numpy as np
 from numpy.typing import NDArray
 
-from simplexcub.errors import InputError
 from simplexcub.measures import Measure
 from simplexcub.rule import Space
 from simplexcub.symmetry import distinct_permutations
@@ -112,18 +112,12 @@ def check_degree(printed: Printed, measure: Measure, degree: int, space: Space, 
     measure : Measure
         Its means are computed by the last of its routes.
     degree : int
-    space : {"all", "symmetric"}
+    space : {"all", "symmetric", "ordered"}
+        In the last `measure` must be the law of the ordered spectrum.
     invariant : bool
         The printed set and the measure are both invariant under all permutations: sorted exponents then stand for all.
-
-    Raises
-    ------
-    InputError
-        A space other than these two.
     """
     n, nodes = measure.N, len(printed.nodes)
-    if space not in ("all", "symmetric"):
-        raise InputError("space must be all or symmetric for a rule to be verified", space)
     means = _means(measure, degree, space, invariant)
     smallest = min(means.values())
     depth = len(str(smallest.denominator // smallest.numerator))
@@ -135,7 +129,7 @@ def check_degree(printed: Printed, measure: Measure, degree: int, space: Space, 
     one = 10**q
     powers = _powers(printed, degree, q)
     weights = _terms(list(printed.weights), printed.weight_units, printed.places, q)
-    if space == "all":
+    if space != "symmetric":
         sums = _monomial_sums(weights, powers, degree, one, invariant)
     else:
         sums = _symmetric_sums(weights, powers, degree, one)
@@ -152,7 +146,7 @@ def check_degree(printed: Printed, measure: Measure, degree: int, space: Space, 
         relative = _quotient(residual, tolerance)
         if relative > ratio:
             ratio, offender, offence = relative, exponents, residual
-    checked = sum(orderings.values()) if space == "all" and invariant else len(means)
+    checked = sum(orderings.values()) if space != "symmetric" and invariant else len(means)
     return DegreeCheck(degree, checked, short(worst), worst_exponents, ratio, offender, short(offence))
 
 
@@ -175,7 +169,7 @@ def mean(measure: Measure, exponents: Exponents) -> Fraction:
 
 
 def _means(measure: Measure, degree: int, space: Space, invariant: bool) -> dict[Exponents, Fraction]:
-    if space == "all" and not invariant:
+    if space != "symmetric" and not invariant:
         return {a: mean(measure, a) for a in compositions(degree, measure.N)}
     sorted_exponents = partitions(degree, measure.N, degree)
     if measure.is_symmetric:

@@ -61,12 +61,13 @@ def claim_faults(rule: Rule, printed: Printed) -> Iterator[str]:
     """The digits, symmetry, order and orbits that the rule claims, against the decimals."""
     if rule.digits > printed.digits:
         yield f"{rule.digits} digits claimed, but the decimals carry at most {printed.digits}"
-    if rule.space == "symmetric":
+    if rule.space != "all":
+        what = "stands for its orbit" if rule.space == "symmetric" else "is an ordered spectrum"
         for k, node in enumerate(printed.nodes, 1):
             if list(node) != sorted(node, reverse=True):
-                yield f"node {k} stands for its orbit, but its coordinates are not in descending order"
+                yield f"node {k} {what}, but its coordinates are not in descending order"
                 break
-    else:
+    if rule.space != "symmetric":
         yield from _symmetry_faults(rule, printed)
     if rule.orbits:
         yield from _orbit_faults(rule, printed)
