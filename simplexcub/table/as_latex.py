@@ -176,15 +176,19 @@ def _number_widths(page: Sheet, size: tex.Size) -> list[float]:
 
 def _tall(page: Sheet, width: float) -> Layout:
     """One line per number; the pattern and its number of nodes stand beside the first two."""
-    leads = [_beside(page, entry) for entry in page.entries]
+    beside = [_beside(page, entry) for entry in page.entries]
+    leads = [(tex.pattern(these[0]), *these[1:]) if these else () for these in beside]
     for size in tex.SIZES:
-        left = [size.words(page.head[0]), *([max(size.words(x) for these in leads for x in these)] if leads[0] else [])]
+        left = [
+            size.words(page.head[0]),
+            *([max(size.words(x) for these in beside for x in these)] if beside[0] else []),
+        ]
         room = width - sum(left) - size.words("mm") - _GAP * (len(left) + 1)
         if max(_number_widths(page, size)) <= room:
             break
     places = size.digits_within(room)
     rows = []
-    for k, (entry, beside) in enumerate(zip(page.entries, leads, strict=True)):
+    for k, (entry, lead) in enumerate(zip(page.entries, leads, strict=True)):
         if k:
             rows.append(r"\addlinespace[3pt]")
         lines: list[tuple[str, str]] = []
@@ -194,12 +198,12 @@ def _tall(page: Sheet, width: float) -> Layout:
             lines += [(tex.label(name) if not j else "", piece) for j, piece in enumerate(pieces)]
         together = len(lines) <= _LONGEST_BLOCK
         for j, (name, piece) in enumerate(lines):
-            lead = [entry.lead[0] if not j else ""]
+            first = [entry.lead[0] if not j else ""]
             if leads[0]:
-                lead.append(beside[j] if j < len(beside) else "")
-            rows.append(" & ".join((*lead, name, piece)) + (r" \\*" if together and j < len(lines) - 1 else r" \\"))
+                first.append(lead[j] if j < len(lead) else "")
+            rows.append(" & ".join((*first, name, piece)) + (r" \\*" if together and j < len(lines) - 1 else r" \\"))
     types = "rlll" if leads[0] else "rll"
-    names = [page.head[0], *(["pattern"] if leads[0] else [])]
+    names = [page.head[0], *(["pattern"] if beside[0] else [])]
     head = " & ".join((*names, r"\multicolumn{2}{l@{}}{values and weight}")) + r" \\"
     return Layout(size, types, head, rows)
 
@@ -208,7 +212,7 @@ def _beside(page: Sheet, entry: Entry) -> Sequence[str]:
     if not page.by_orbits:
         return ()
     _, nodes, pattern = entry.lead
-    return tex.pattern(pattern), *([counted(int(nodes), "node")] if "w" in page.labels else [])
+    return pattern, *([counted(int(nodes), "node")] if "w" in page.labels else [])
 
 
 def _footnote(rule: Rule, said: dict[str, Fact], cited: Mapping[Source, int]) -> str:
