@@ -37,6 +37,7 @@ _HOME = {
     "polynomial_density": "measures",
     "symplectic": "measures",
     "Rule": "rule",
+    "chebyshev": "search",
     "solve": "search",
     "verify": "verify",
     "load": "table",

@@ -37,6 +37,7 @@ def add_options(parser: argparse.ArgumentParser) -> None:
         help=f"symmetry of the node set: one of {', '.join(NAMES)}, or best, which tries several and keeps the"
         " fewest nodes (default full)",
     )
+    parser.add_argument("--equal-weights", action="store_true", help="the weight 1/M for each of M nodes")
     parser.add_argument("--digits", type=whole, default=50, metavar="D", help="significant digits (default 50)")
     parser.add_argument(
         "--budget", type=duration, default=60.0, metavar="TIME", help="time for the search: 90s, 2m, 1h (default 60s)"
@@ -74,6 +75,9 @@ def run(args: argparse.Namespace) -> int:
             f"no smaller rule was found in time; this is the conical product rule of {len(rule)} nodes."
             " A longer --budget or another --seed may find fewer"
         )
+    _, _, remark = rule.provenance.method.partition("; ")
+    if remark:
+        complain(f"{remark}; the next that do are {len(rule)} nodes, degree {rule.degree}")
     _deliver(rule, args.output)
     if not report.holds:
         complain(f"the rule was not verified: {'; '.join(report.reasons)}")
@@ -95,6 +99,7 @@ def _solved(args: argparse.Namespace, measure: Measure, show: ProgressLine) -> R
             args.degree,
             space=args.space,
             symmetry=args.symmetry,
+            equal_weights=args.equal_weights,
             digits=args.digits,
             seed=args.seed,
             budget=args.budget,

@@ -16,6 +16,7 @@ from simplexcub.errors import InputError, NothingFound
 from simplexcub.invariants import invariant_basis
 from simplexcub.measures import Dirichlet, Measure
 from simplexcub.rule import Provenance, Rule, rule_from_nodes, rule_from_orbits
+from simplexcub.search.chebyshev import Chebyshev, chebyshev, chebyshev_rule
 from simplexcub.search.conical import MOST_NODES, conical_count, conical_rule
 from simplexcub.search.driver import Budget, Found, Progress, Search
 from simplexcub.search.gauss import gauss_rule
@@ -24,7 +25,7 @@ from simplexcub.search.system import FloatArray, Problem
 from simplexcub.search.workers import Overdue, Workers, local_workers
 from simplexcub.symmetry import Group, named_group
 
-__all__ = ["Progress", "product_rule", "solve"]
+__all__ = ["Chebyshev", "Progress", "chebyshev", "product_rule", "solve"]
 
 _SPACES = ("all",)
 # Node counts measured over degrees 3 to 12: few symmetries first, since that is where the fewest nodes were found.
@@ -43,6 +44,7 @@ def solve(
     *,
     space: Literal["all"] = "all",
     symmetry: str = "full",
+    equal_weights: bool = False,
     digits: int = 50,
     seed: int = 0,
     budget: float = 60.0,
@@ -68,6 +70,8 @@ def solve(
         (N = 4); ``stabiliser`` of the last component; ``product-2-1`` and the like, within consecutive blocks;
         ``none``. Fewer symmetries often need fewer nodes. ``best`` tries several and keeps the fewest nodes. For a
         Dirichlet measure with unequal α, ``full`` means the permutations among components of equal α.
+    equal_weights : bool
+        Every node has the weight 1/M. For N = 2 it is decided exactly which numbers of nodes serve.
     digits : int
         Significant digits of nodes and weights, at least 5.
     seed : int
@@ -104,6 +108,8 @@ def solve(
     """
     _check(degree=degree, space=space, digits=digits, seed=seed, budget=budget, jobs=jobs)
     groups = _groups(measure, symmetry)
+    if measure.N == 2 and equal_weights:
+        return chebyshev_rule(measure, degree, digits=digits, provenance=_provenance(seed, ""))
     if measure.N == 2:
         return product_rule(measure, degree, digits=digits, seed=seed)
     record = None if resume is None else Record(resume)
