@@ -38,6 +38,7 @@ _HOME = {
     "symplectic": "measures",
     "Rule": "rule",
     "chebyshev": "search",
+    "embed": "search",
     "solve": "search",
     "verify": "verify",
     "load": "table",

@@ -16,6 +16,7 @@ from mpmath import mp, mpf
 from numpy.typing import NDArray
 
 from simplexcub.decimals import to_decimal
+from simplexcub.embedded import Embedded, Estimate
 from simplexcub.errors import InputError
 from simplexcub.measures import Measure
 from simplexcub.symmetry import distinct_permutations, orbit_size
@@ -97,6 +98,12 @@ class Rule:
         Significant digits of every decimal.
     orbits : tuple of Orbit
         The same nodes, one entry per orbit, where the symmetry is full.
+    also : tuple of str
+        Functions that it averages exactly besides the polynomials, by their names in :mod:`simplexcub.entropic`.
+    integer_weights : tuple of int
+        Where all weights are small integers over their sum, these integers.
+    embedded : Embedded or None
+        A second set of weights of lower degree.
     """
 
     measure: Measure
@@ -109,11 +116,20 @@ class Rule:
     equal_weights: bool = False
     digits: int = 50
     orbits: tuple[Orbit, ...] = ()
+    also: tuple[str, ...] = ()
+    integer_weights: tuple[int, ...] = ()
+    embedded: Embedded | None = None
     verification: Verification | None = field(default=None, compare=False)
 
     def __post_init__(self) -> None:
         if len(self.node_decimals) != len(self.weight_decimals):
             raise InputError("there must be one weight per node", f"{len(self.weight_decimals)} weights")
+        for name, column in (
+            ("embedded weight", self.embedded and self.embedded.weight_decimals),
+            ("integer weight", self.integer_weights),
+        ):
+            if column and len(column) != len(self.node_decimals):
+                raise InputError(f"there must be one {name} per node", f"{len(column)} weights")
         if not self.node_decimals:
             raise InputError("a rule must have at least one node", 0)
         for node in self.node_decimals:
@@ -135,6 +151,19 @@ class Rule:
     def weights(self) -> FloatArray:
         """Weights, shape (M,), float64, read-only."""
         return _frozen([float(w) for w in self.weight_decimals])
+
+    @cached_property
+    def embedded_weights(self) -> FloatArray:
+        """The second set of weights, shape (M,), float64, read-only.
+
+        Raises
+        ------
+        InputError
+            The rule has none.
+        """
+        if self.embedded is None:
+            raise InputError("the rule must have embedded weights", self, "Make them: embed(rule).")
+        return _frozen([float(w) for w in self.embedded.weight_decimals])
 
     def exact_nodes(self, dps: int | None = None) -> list[list[mpf]]:
         """Nodes as mpmath numbers, rounded to `dps` digits (all digits of the table by default)."""
@@ -164,6 +193,34 @@ class Rule:
         InputError
             `f` returned an array whose first axis is not the nodes.
         """
+        return self._sum(self.weights, self._values(f))
+
+    def estimate(self, f: Callable[[FloatArray], Any]) -> Estimate:
+        """The mean of `f`, and its difference from the mean by the embedded weights, from one set of evaluations.
+
+        The error is that of the embedded weights, so the value itself is usually much better than it says.
+
+        Parameters
+        ----------
+        f : callable
+            As for :meth:`average`.
+
+        Returns
+        -------
+        Estimate
+            ``value`` and ``error``, each as :meth:`average` returns it.
+
+        Raises
+        ------
+        InputError
+            The rule has no embedded weights, or `f` returned an array whose first axis is not the nodes.
+        """
+        second = self.embedded_weights
+        values = self._values(f)
+        value = self._sum(self.weights, values)
+        return Estimate(value, abs(value - self._sum(second, values)))
+
+    def _values(self, f: Callable[[FloatArray], Any]) -> NDArray[Any]:
         values = np.asarray(f(self.nodes))
         if values.shape[:1] != (len(self),):
             raise InputError(
@@ -171,7 +228,10 @@ class Rule:
                 f"shape {values.shape}",
                 "f receives all nodes at once, shape (M, N); reduce over the last axis.",
             )
-        mean = np.tensordot(self.weights, values, axes=1)
+        return values
+
+    def _sum(self, weights: FloatArray, values: NDArray[Any]) -> Any:
+        mean = np.tensordot(weights, values, axes=1)
         return mean.item() if mean.ndim == 0 else mean
 
     def verified(self, verification: Verification) -> Rule:

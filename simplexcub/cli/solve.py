@@ -15,7 +15,7 @@ from simplexcub.cli.speech import complain
 from simplexcub.errors import InputError
 from simplexcub.measures import Measure
 from simplexcub.rule import Rule
-from simplexcub.search import solve
+from simplexcub.search import embed, solve
 from simplexcub.symmetry import NAMES
 from simplexcub.table import efficiency, format_of, render, save
 from simplexcub.verify import verify
@@ -38,6 +38,9 @@ def add_options(parser: argparse.ArgumentParser) -> None:
         " fewest nodes (default full)",
     )
     parser.add_argument("--equal-weights", action="store_true", help="the weight 1/M for each of M nodes")
+    parser.add_argument(
+        "--embedded", action="store_true", help="a second column of weights, of lower degree, that tells the error"
+    )
     parser.add_argument("--digits", type=whole, default=50, metavar="D", help="significant digits (default 50)")
     parser.add_argument(
         "--budget", type=duration, default=60.0, metavar="TIME", help="time for the search: 90s, 2m, 1h (default 60s)"
@@ -68,6 +71,8 @@ def run(args: argparse.Namespace) -> int:
         require_writable(args.output)
     with InterruptNoted() as interrupted, ProgressLine() as show:
         rule = _solved(args, measure, show)
+        if args.embedded:
+            rule = embed(rule)
         report = verify(rule, prove=True, progress=show)
     rule = rule.verified(report.verification)
     if rule.provenance.method == "conical product":

@@ -19,13 +19,14 @@ from simplexcub.rule import Provenance, Rule, rule_from_nodes, rule_from_orbits
 from simplexcub.search.chebyshev import Chebyshev, chebyshev, chebyshev_rule
 from simplexcub.search.conical import MOST_NODES, conical_count, conical_rule
 from simplexcub.search.driver import Budget, Found, Progress, Search
+from simplexcub.search.embed import embed
 from simplexcub.search.gauss import gauss_rule
 from simplexcub.search.record import Record
 from simplexcub.search.system import FloatArray, Problem
 from simplexcub.search.workers import Overdue, Workers, local_workers
 from simplexcub.symmetry import Group, named_group
 
-__all__ = ["Chebyshev", "Progress", "chebyshev", "product_rule", "solve"]
+__all__ = ["Chebyshev", "Progress", "chebyshev", "embed", "product_rule", "solve"]
 
 _SPACES = ("all",)
 # Node counts measured over degrees 3 to 12: few symmetries first, since that is where the fewest nodes were found.

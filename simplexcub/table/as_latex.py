@@ -59,7 +59,7 @@ def export(rule: Rule) -> str:
 def _caption(rule: Rule, page: Sheet, said: dict[str, Fact]) -> str:
     orbits = f" in {counted(len(rule.orbits), 'orbit')}" if page.by_orbits and rule.space == "all" else ""
     rule_in_words = f"{counted(len(rule), 'node')}{orbits}, exact for {said['exact for'].tex}"
-    legend = re.sub(r"\b([wW])\b", r"$\1$", _symbols(page.legend))
+    legend = re.sub(r"\bw2\b", "$w_2$", re.sub(r"\b([wW])\b", r"$\1$", _symbols(page.legend)))
     return (
         f"{escape(heading(rule).split(', degree')[0])}: {rule_in_words}. "
         f"Density {said['density'].tex}, of total mass 1; weights sum to 1. {legend}"

@@ -6,8 +6,10 @@ import re
 from collections.abc import Sequence
 from typing import NamedTuple
 
+from simplexcub.entropic import named
 from simplexcub.measures import Measure
 from simplexcub.rule import Rule, Verification
+from simplexcub.table.sheet import SECOND
 from simplexcub.verify.printed import read_printed
 from simplexcub.verify.structure import claim_faults, node_faults, weight_faults
 
@@ -16,6 +18,7 @@ EXACT_FOR = {
     "symmetric": "every symmetric polynomial of degree ≤ {}",
     "ordered": "every polynomial of degree ≤ {} in the ordered spectrum λ1 ≥ … ≥ λN",
 }
+SEPARATOR = ", and "  # between the polynomials and each further function
 _NAMES = {
     "flat": "Flat measure",
     "dirichlet": "Dirichlet measure",
@@ -109,7 +112,7 @@ def facts(rule: Rule) -> list[Fact]:
         with_respect = f"dλ1 … dλ{measure.N - 1}"
         tex_differential = rf"d\lambda_1\cdots d\lambda_{{{measure.N - 1}}}"
     state = status(rule)
-    exact_for = EXACT_FOR[rule.space].format(rule.degree)
+    exact_for = SEPARATOR.join([EXACT_FOR[rule.space].format(rule.degree), *(named(x).formula for x in rule.also)])
     source = rule.provenance
     made_by = f"{source.package}, seed {source.seed}, {source.date}"
     return [
@@ -117,11 +120,13 @@ def facts(rule: Rule) -> list[Fact]:
         _fact("measure", measure_line(measure)),
         Fact("density", f"{plain}  with respect to {with_respect}", rf"${tex}$ with respect to ${tex_differential}$"),
         _fact("exact for", exact_for),
+        *([_fact("also", ", ".join(rule.also))] if rule.also else []),
         _fact("space", rule.space),
         _fact("degree", str(rule.degree)),
         _fact("nodes", _nodes(rule)),
         _fact("symmetry", rule.symmetry),
         _fact("weights", _weights(rule)),
+        *_further_weights(rule),
         _fact("digits", str(rule.digits)),
         *_checks(rule.verification, len(rule)),
         _fact("made by", " ".join(made_by.split())),
@@ -162,6 +167,16 @@ def _nodes(rule: Rule) -> str:
 def _weights(rule: Rule) -> str:
     signs = "positive" if min(rule.weights) > 0 else "some not positive"
     return f"{signs}, all equal" if rule.equal_weights else signs
+
+
+def _further_weights(rule: Rule) -> list[Fact]:
+    found = []
+    if rule.integer_weights:
+        shown = " ".join(map(str, rule.integer_weights))
+        found.append(_fact("integers", f"the weights times {sum(rule.integer_weights)}: {shown}"))
+    if rule.embedded:
+        found.append(_fact("embedded", f"weights {SECOND} on the same nodes, to degree {rule.embedded.degree}"))
+    return found
 
 
 def efficiency(bound: int, nodes: int) -> str:

@@ -14,6 +14,7 @@ from simplexcub.errors import InputError
 from simplexcub.measures import Measure
 from simplexcub.rule import Rule, Verification
 from simplexcub.verify.bounds import dimension, lower_bound
+from simplexcub.verify.embedded import embedded_faults
 from simplexcub.verify.printed import Printed, read_printed
 from simplexcub.verify.proof import prove as find_proof
 from simplexcub.verify.proof_result import Proof
@@ -143,6 +144,7 @@ def verify(
     bound = lower_bound(against, judged.degree, rule.space)
     if rule.degree and len(rule) < bound:
         reasons.append(f"degree {rule.degree} claimed with {len(rule)} nodes, but no such rule has fewer than {bound}")
+    reasons += embedded_faults(rule, against, printed, invariant=trial.invariant)
     degree = rule.degree or fails_at - 1
     proof = find_proof(rule, measure=against, degree=degree) if prove and degree > 0 else None
     if rule.degree and proof is not None and proof.holds and proof.units > FARTHEST:
