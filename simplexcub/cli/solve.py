@@ -9,13 +9,14 @@ from pathlib import Path
 from simplexcub.cli.cluster import cluster_executor
 from simplexcub.cli.interrupt import InterruptNoted
 from simplexcub.cli.measure import add_measure, measure_of
-from simplexcub.cli.options import duration, whole
+from simplexcub.cli.options import duration, listed, whole
 from simplexcub.cli.output import ProgressLine, require_writable
 from simplexcub.cli.speech import complain
 from simplexcub.errors import InputError
 from simplexcub.measures import Measure
 from simplexcub.rule import Rule
 from simplexcub.search import embed, solve
+from simplexcub.search.chosen import SETS
 from simplexcub.symmetry import NAMES
 from simplexcub.table import efficiency, format_of, render, save
 from simplexcub.verify import verify
@@ -38,6 +39,9 @@ def add_options(parser: argparse.ArgumentParser) -> None:
         " fewest nodes (default full)",
     )
     parser.add_argument("--equal-weights", action="store_true", help="the weight 1/M for each of M nodes")
+    parser.add_argument(
+        "--include", type=listed, default=[], metavar="SETS", help=f"nodes that it must have: some of {', '.join(SETS)}"
+    )
     parser.add_argument(
         "--embedded", action="store_true", help="a second column of weights, of lower degree, that tells the error"
     )
@@ -105,6 +109,7 @@ def _solved(args: argparse.Namespace, measure: Measure, show: ProgressLine) -> R
             space=args.space,
             symmetry=args.symmetry,
             equal_weights=args.equal_weights,
+            include=args.include,
             digits=args.digits,
             seed=args.seed,
             budget=args.budget,

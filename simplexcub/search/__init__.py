@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 import datetime
-from collections.abc import Callable
+from collections.abc import Callable, Sequence
 from concurrent.futures import Executor
 from pathlib import Path
 from typing import Literal
@@ -22,7 +22,8 @@ from simplexcub.search.driver import Budget, Found, Progress, Search
 from simplexcub.search.embed import embed
 from simplexcub.search.gauss import gauss_rule
 from simplexcub.search.record import Record
-from simplexcub.search.system import FloatArray, Problem
+from simplexcub.search.system import FloatArray
+from simplexcub.search.wish import Wish
 from simplexcub.search.workers import Overdue, Workers, local_workers
 from simplexcub.symmetry import Group, named_group
 
@@ -46,6 +47,7 @@ def solve(
     space: Literal["all"] = "all",
     symmetry: str = "full",
     equal_weights: bool = False,
+    include: str | Sequence[str] = (),
     digits: int = 50,
     seed: int = 0,
     budget: float = 60.0,
@@ -73,6 +75,8 @@ def solve(
         Dirichlet measure with unequal α, ``full`` means the permutations among components of equal α.
     equal_weights : bool
         Every node has the weight 1/M. For N = 2 it is decided exactly which numbers of nodes serve.
+    include : {"vertices", "centre", "edge-midpoints"} or sequence of them
+        Nodes that the rule must have, for those who hold values there; their weights are free, but positive.
     digits : int
         Significant digits of nodes and weights, at least 5.
     seed : int
@@ -111,17 +115,20 @@ def solve(
     groups = _groups(measure, symmetry)
     if measure.N == 2 and equal_weights:
         return chebyshev_rule(measure, degree, digits=digits, provenance=_provenance(seed, ""))
-    if measure.N == 2:
+    wish = Wish(measure, degree, (include,) if isinstance(include, str) else tuple(include))
+    if measure.N == 2 and wish.plain:
         return product_rule(measure, degree, digits=digits, seed=seed)
     record = None if resume is None else Record(resume)
     if executor is None:
         with local_workers(jobs, record) as workers:
-            found = _search(groups, measure, degree, digits, seed, budget, workers, progress)
+            found = _search(groups, wish, digits, seed, budget, workers, progress)
     else:
         workers = Workers(lambda: executor, jobs, record, owned=False)
-        found = _search(groups, measure, degree, digits, seed, budget, workers, progress)
+        found = _search(groups, wish, digits, seed, budget, workers, progress)
     if found is not None:
-        return _rule(found, digits, _provenance(seed, "orbit search"))
+        return _rule(found, digits, _provenance(seed, wish.method))
+    if not wish.plain:
+        wish.give_up(budget)
     return product_rule(measure, degree, digits=digits, seed=seed)
 
 
@@ -154,8 +161,7 @@ def _provenance(seed: int, method: str) -> Provenance:
 
 def _search(
     groups: list[Group],
-    measure: Measure,
-    degree: int,
+    wish: Wish,
     digits: int,
     seed: int,
     budget: float,
@@ -169,14 +175,14 @@ def _search(
         share = Budget((budget - allowance.elapsed) / (len(groups) - i))
         most = MOST_NODES if best is None else best.nodes - 1
         search = Search(
-            Problem(measure, degree, group),
+            wish.problem(group),
             digits=digits,
             seed=seed,
             budget=share,
             workers=workers,
             most_nodes=most,
             progress=progress,
-            known=_known(measure, degree, group, best),
+            known=_known(wish.measure, wish.degree, group, best) if wish.plain else (),
         )
         workers.deadline = share.start + share.seconds
         try:

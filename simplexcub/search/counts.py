@@ -15,6 +15,7 @@ from math import comb
 import numpy as np
 
 from simplexcub.invariants import invariant_basis
+from simplexcub.search.chosen import Chosen, stratum
 from simplexcub.symmetry import Group, OrbitType
 
 Counts = tuple[tuple[OrbitType, int], ...]  # (orbit type, how many orbits), types with none left out
@@ -60,15 +61,21 @@ def conditions(group: Group, degree: int) -> list[Condition]:
 
 def allowed(counts: Counts, wanted: list[Condition]) -> bool:
     """Whether a count vector meets every condition."""
-    return all(sum(c * t.unknowns for t, c in counts if t in s) >= need for s, need in wanted)
+    return all(sum(c * t.unknowns for t, c in counts if stratum(t) in s) >= need for s, need in wanted)
 
 
-def possible_counts(group: Group, degree: int, nodes: int) -> list[Counts]:
+def possible_counts(group: Group, degree: int, nodes: int, chosen: tuple[Chosen, ...] = ()) -> list[Counts]:
     """Count vectors of exactly `nodes` nodes that pass every condition, those with most freedom first.
 
-    Freedom is the least excess of unknowns over any condition. At most ``_MOST_STRUCTURES`` are listed.
+    Freedom is the least excess of unknowns over any condition. At most ``_MOST_STRUCTURES`` are listed. The `chosen`
+    orbits are part of all of them.
     """
-    wanted = conditions(group, degree)
+    given = tuple((t, 1) for t in chosen)
+    nodes -= node_count(given)
+    if nodes < 0:
+        return []
+    wanted = [(s, need - sum(stratum(t) in s for t in chosen)) for s, need in conditions(group, degree)]
+    taken = {stratum(t) for t in chosen if stratum(t).unknowns == 1}  # a stratum of one point, which is chosen
     types = list(reversed(group.types))
     masks = [[t in s for t in types] for s, _ in wanted]
     # The most unknowns that one node can bring to a condition, among the types from position i on.
@@ -87,7 +94,7 @@ def possible_counts(group: Group, degree: int, nodes: int) -> list[Counts]:
         t = types[i]
         most = left // t.size
         if t.unknowns == 1:
-            most = min(most, 1)  # a stratum of one point
+            most = min(most, 0 if t in taken else 1)  # a stratum of one point
         for c in range(most, -1, -1):
             rest = tuple(lack - c * t.unknowns * mask[i] for lack, mask in zip(lacks, masks, strict=True))
             for tail in extend(i + 1, left - c * t.size, rest):
@@ -99,7 +106,7 @@ def possible_counts(group: Group, degree: int, nodes: int) -> list[Counts]:
     def freedom(counts: Counts) -> int:
         return min(sum(c * t.unknowns for t, c in counts if t in s) - need for s, need in wanted)
 
-    return sorted(found, key=lambda cs: (-freedom(cs), sum(c * t.unknowns for t, c in cs)))
+    return [cs + given for cs in sorted(found, key=lambda cs: (-freedom(cs), sum(c * t.unknowns for t, c in cs)))]
 
 
 def fewest_nodes(group: Group, degree: int) -> int:

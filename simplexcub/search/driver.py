@@ -150,12 +150,15 @@ class Search:
         for nodes in range(fewest_nodes(self.problem.group, self.problem.degree), self._most() + 1):
             if self.budget.spent:
                 return
-            structures = possible_counts(self.problem.group, self.problem.degree, nodes)[:most_structures]
+            structures = self._structures(nodes)[:most_structures]
             tasks = (Chunk(self.problem, counts, self.seed, number) for counts in structures for number in numbers)
             for task, solutions in self.workers.in_order(takewhile(lambda _: not self.budget.spent, tasks)):
                 self._report(f"starts for {describe(task.counts)}")
                 if self._take(task.counts, solutions) or self.budget.spent:
                     return
+
+    def _structures(self, nodes: int) -> list[Counts]:
+        return possible_counts(self.problem.group, self.problem.degree, nodes, self.problem.chosen)
 
     def _take(self, counts: Counts, solutions: FloatArray) -> bool:
         """Keep the first of the solutions that can be refined to all digits."""

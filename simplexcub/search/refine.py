@@ -12,6 +12,7 @@ import numpy as np
 from mpmath import mp, mpf
 from numpy.typing import NDArray
 
+from simplexcub.search.chosen import Chosen
 from simplexcub.search.system import Block, System
 from simplexcub.symmetry import OrbitType
 
@@ -54,6 +55,9 @@ def refine(system: System, u: NDArray[np.float64], digits: int) -> Orbits | None
 
 def _values_fixed(exact: IntArray, block: Block, bits: int) -> IntArray:
     """Distinct coordinates of the block's orbits, the last from the sum; shape (count, k)."""
+    if isinstance(block.type, Chosen):
+        row = [(x.numerator << bits) // x.denominator for x in block.type.coordinates]
+        return np.array([row] * block.count, dtype=object)
     free = exact[block.coordinates].reshape(block.count, block.free)
     last = np.full(block.count, 1 << bits, dtype=object)
     for j, m in enumerate(block.type.multiplicities[:-1]):

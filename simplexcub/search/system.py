@@ -13,6 +13,7 @@ from numpy.typing import NDArray
 
 from simplexcub.invariants import Basis, invariant_basis, mean_vector
 from simplexcub.measures import Measure
+from simplexcub.search.chosen import Chosen
 from simplexcub.search.counts import Counts, random_values
 from simplexcub.symmetry import Group, OrbitType
 
@@ -22,11 +23,18 @@ Parts = dict[OrbitType, list[tuple[float, FloatArray]]]  # orbits of one candida
 
 @dataclass(frozen=True)
 class Problem:
-    """What is searched for: a measure, a degree and the symmetry of the node set."""
+    """What is searched for: a measure, a degree, the symmetry of the node set and orbits that it must have."""
 
     measure: Measure
     degree: int
     group: Group
+    chosen: tuple[Chosen, ...] = ()
+
+    @property
+    def types(self) -> list[OrbitType]:
+        """Orbit types of the group, without single points that are chosen, and the chosen orbits."""
+        points = {t.stratum for t in self.chosen if t.stratum.unknowns == 1}
+        return [*(t for t in self.group.types if t not in points), *self.chosen]
 
     @property
     def basis(self) -> Basis:
@@ -71,7 +79,7 @@ class System:
         rows, offsets = [np.eye(self.size)], [np.zeros(self.size)]
         for block in self.blocks:
             m = np.array(block.type.multiplicities, dtype=float)
-            for i in range(block.count):
+            for i in range(0 if isinstance(block.type, Chosen) else block.count):
                 row = np.zeros(self.size)
                 start = block.coordinates.start + i * block.free
                 row[start : start + block.free] = -m[:-1] / m[-1]
@@ -81,6 +89,9 @@ class System:
 
     def values(self, u: FloatArray, block: Block) -> FloatArray:
         """Distinct coordinates of the block's orbits; shape (B, count, k)."""
+        if isinstance(block.type, Chosen):
+            given = np.array([float(x) for x in block.type.coordinates])
+            return np.broadcast_to(given, (len(u), block.count, len(given)))
         free = u[:, block.coordinates].reshape(len(u), block.count, block.free)
         m = np.array(block.type.multiplicities, dtype=float)
         last = (1.0 - free @ m[:-1]) / m[-1]
@@ -92,12 +103,13 @@ class System:
         residual = np.broadcast_to(-self.means, (batch, count)).copy()
         jacobian = np.empty((batch, self.size, count))
         for block in self.blocks:
-            k = block.type.unknowns
+            k = len(block.type.multiplicities)
             jet = self.basis.jet(self.values(u, block).reshape(-1, k), block.type)
             jet = jet.reshape(batch, block.count, k, count)
             weights = u[:, block.weights]
             jacobian[:, block.weights] = jet[:, :, 0]
-            jacobian[:, block.coordinates] = (weights[:, :, None, None] * jet[:, :, 1:]).reshape(batch, -1, count)
+            slopes = weights[:, :, None, None] * jet[:, :, 1 : 1 + block.free]
+            jacobian[:, block.coordinates] = slopes.reshape(batch, block.count * block.free, count)
             residual += np.einsum("br,bre->be", weights, jet[:, :, 0])
         return residual, jacobian.transpose(0, 2, 1)
 
@@ -105,6 +117,9 @@ class System:
         """Random candidates inside the simplex, weights in proportion to orbit size but for noise."""
         u = np.empty((batch, self.size))
         for block in self.blocks:
+            if isinstance(block.type, Chosen):
+                u[:, block.weights] = block.type.size * rng.uniform(0.1, 1.5, (batch, block.count))
+                continue
             points = rng.dirichlet(np.ones(self.problem.group.n), (batch, block.count))
             u[:, block.coordinates] = random_values(block.type, points)[..., :-1].reshape(batch, -1)
             u[:, block.weights] = block.type.size * rng.uniform(0.5, 1.5, (batch, block.count))
@@ -120,6 +135,8 @@ class System:
         out = np.empty_like(u)
         out[:, : self.orbits] = u[:, : self.orbits] * self.orbits
         for block in self.blocks:
+            if not block.free:
+                continue
             values = self.values(u, block)
             room = np.minimum(values[..., :-1], values[..., -1:])
             out[:, block.coordinates] = room.reshape(len(u), -1) * self.problem.group.n
@@ -134,12 +151,12 @@ class System:
 
     def join(self, parts: Parts) -> tuple[Counts, FloatArray]:
         """The structure and the unknowns of a candidate given by its orbits; weights are scaled to sum to 1."""
-        kept = [(t, _united(t, parts[t])) for t in self.problem.group.types if parts.get(t)]
+        kept = [(t, _united(t, parts[t])) for t in self.problem.types if parts.get(t)]
         counts = tuple((t, len(orbits)) for t, orbits in kept)
         if not kept:
             return (), np.empty(0)
         weights = np.array([w for _, orbits in kept for w, _ in orbits])
-        coordinates = [values[:-1] for _, orbits in kept for _, values in orbits]
+        coordinates = [values[: t.unknowns - 1] for t, orbits in kept for _, values in orbits]
         return counts, np.concatenate([weights / weights.sum(), *coordinates])
 
 

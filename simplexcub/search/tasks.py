@@ -84,7 +84,9 @@ def describe(counts: Counts) -> str:
 
 
 def _digest(problem: Problem, *rest: object) -> str:
-    label = repr((sorted(problem.measure.parameters().items()), problem.degree, problem.group.name, rest))
+    chosen = [t.coordinates for t in problem.chosen]
+    asked = (problem.degree, problem.group.name, *([chosen] if chosen else []))
+    label = repr((sorted(problem.measure.parameters().items()), *asked, rest))
     return hashlib.sha256(label.encode()).hexdigest()
 
 
