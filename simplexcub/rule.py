@@ -130,6 +130,8 @@ class Rule:
         ):
             if column and len(column) != len(self.node_decimals):
                 raise InputError(f"there must be one {name} per node", f"{len(column)} weights")
+        if any(k < 1 for k in self.integer_weights):
+            raise InputError("integer weights must be at least 1", min(self.integer_weights))
         if not self.node_decimals:
             raise InputError("a rule must have at least one node", 0)
         for node in self.node_decimals:

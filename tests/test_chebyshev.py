@@ -77,7 +77,7 @@ def test_the_command_says_why_and_gives_the_next(call: Call) -> None:
     assert status == 0
     (line,) = err
     assert "8 nodes of equal weight and degree 8 do not exist: 2 of 8 zeros real and on [0, 1]" in line
-    assert "9 nodes, degree 9" in line
+    assert "here are 9 nodes of equal weight, degree 9" in line
     assert any("positive, all equal" in text for text in out)
     assert "degree 9, 9 nodes" in out[0]
 

@@ -40,6 +40,9 @@ def add_options(parser: argparse.ArgumentParser) -> None:
     )
     parser.add_argument("--equal-weights", action="store_true", help="the weight 1/M for each of M nodes")
     parser.add_argument(
+        "--integer-weights", type=whole, default=0, metavar="K", help="weights that are integers up to K over their sum"
+    )
+    parser.add_argument(
         "--include", type=listed, default=[], metavar="SETS", help=f"nodes that it must have: some of {', '.join(SETS)}"
     )
     parser.add_argument(
@@ -86,7 +89,7 @@ def run(args: argparse.Namespace) -> int:
         )
     _, _, remark = rule.provenance.method.partition("; ")
     if remark:
-        complain(f"{remark}; the next that do are {len(rule)} nodes, degree {rule.degree}")
+        complain(f"{remark}; here are {len(rule)} nodes of equal weight, degree {rule.degree}")
     _deliver(rule, args.output)
     if not report.holds:
         complain(f"the rule was not verified: {'; '.join(report.reasons)}")
@@ -109,6 +112,7 @@ def _solved(args: argparse.Namespace, measure: Measure, show: ProgressLine) -> R
             space=args.space,
             symmetry=args.symmetry,
             equal_weights=args.equal_weights,
+            integer_weights=args.integer_weights,
             include=args.include,
             digits=args.digits,
             seed=args.seed,

@@ -23,7 +23,7 @@ from simplexcub.search.embed import embed
 from simplexcub.search.gauss import gauss_rule
 from simplexcub.search.record import Record
 from simplexcub.search.system import FloatArray
-from simplexcub.search.wish import Wish
+from simplexcub.search.wish import Wish, fixed_integers, with_integers
 from simplexcub.search.workers import Overdue, Workers, local_workers
 from simplexcub.symmetry import Group, named_group
 
@@ -47,6 +47,7 @@ def solve(
     space: Literal["all"] = "all",
     symmetry: str = "full",
     equal_weights: bool = False,
+    integer_weights: int = 0,
     include: str | Sequence[str] = (),
     digits: int = 50,
     seed: int = 0,
@@ -74,7 +75,9 @@ def solve(
         ``none``. Fewer symmetries often need fewer nodes. ``best`` tries several and keeps the fewest nodes. For a
         Dirichlet measure with unequal α, ``full`` means the permutations among components of equal α.
     equal_weights : bool
-        Every node has the weight 1/M. For N = 2 it is decided exactly which numbers of nodes serve.
+        Every node has the weight 1/M. For N = 2 it is decided exactly which numbers of nodes up to degree + 1 serve.
+    integer_weights : int
+        Weights are integers up to this one, over their sum; 0 leaves them free.
     include : {"vertices", "centre", "edge-midpoints"} or sequence of them
         Nodes that the rule must have, for those who hold values there; their weights are free, but positive.
     digits : int
@@ -113,9 +116,14 @@ def solve(
     """
     _check(degree=degree, space=space, digits=digits, seed=seed, budget=budget, jobs=jobs)
     groups = _groups(measure, symmetry)
+    sets = (include,) if isinstance(include, str) else tuple(include)
+    wish = Wish(measure, degree, sets, fixed_integers(equal_weights, integer_weights))
+    reason = ""
     if measure.N == 2 and equal_weights:
-        return chebyshev_rule(measure, degree, digits=digits, provenance=_provenance(seed, ""))
-    wish = Wish(measure, degree, (include,) if isinstance(include, str) else tuple(include))
+        try:
+            return chebyshev_rule(measure, degree, digits=digits, provenance=_provenance(seed, ""))
+        except NothingFound as none:
+            reason = f"; {none.tried}"
     if measure.N == 2 and wish.plain:
         return product_rule(measure, degree, digits=digits, seed=seed)
     record = None if resume is None else Record(resume)
@@ -126,7 +134,7 @@ def solve(
         workers = Workers(lambda: executor, jobs, record, owned=False)
         found = _search(groups, wish, digits, seed, budget, workers, progress)
     if found is not None:
-        return _rule(found, digits, _provenance(seed, wish.method))
+        return _rule(found, digits, _provenance(seed, wish.method + reason))
     if not wish.plain:
         wish.give_up(budget)
     return product_rule(measure, degree, digits=digits, seed=seed)
@@ -216,9 +224,10 @@ def _rule(found: Found, digits: int, provenance: Provenance) -> Rule:
     problem = found.problem
     if problem.group.is_full:
         orbits = [(t.multiplicities, values, weight) for t, values, weight in found.orbits]
-        return rule_from_orbits(problem.measure, problem.degree, orbits, digits=digits, provenance=provenance)
+        rule = rule_from_orbits(problem.measure, problem.degree, orbits, digits=digits, provenance=provenance)
+        return with_integers(rule, found)
     nodes, weights = _written_out(found, digits)
-    return rule_from_nodes(
+    rule = rule_from_nodes(
         problem.measure,
         problem.degree,
         nodes,
@@ -227,6 +236,7 @@ def _rule(found: Found, digits: int, provenance: Provenance) -> Rule:
         provenance=provenance,
         symmetry=problem.group.name,
     )
+    return with_integers(rule, found)
 
 
 def _written_out(found: Found, digits: int) -> tuple[list[list[mpf]], list[mpf]]:

@@ -114,7 +114,7 @@ class Search:
         for nodes, weights in self.known:
             self._walk([0], set_out_from(self.problem, nodes, weights))
         for more_walks, more_chunks, structures, agree in zip(WALKS, CHUNKS, STRUCTURES, AGREE, strict=True):
-            for first in range(walks, walks + more_walks, ABREAST):
+            for first in range(walks, walks + (0 if self.problem.integers else more_walks), ABREAST):
                 self._walk(range(first, first + ABREAST))
             self._start(range(chunks, chunks + more_chunks), structures)
             walks, chunks = walks + more_walks, chunks + more_chunks
@@ -158,7 +158,8 @@ class Search:
                     return
 
     def _structures(self, nodes: int) -> list[Counts]:
-        return possible_counts(self.problem.group, self.problem.degree, nodes, self.problem.chosen)
+        problem, fixed = self.problem, self.problem.integers > 0
+        return possible_counts(problem.group, problem.degree, nodes, problem.chosen, fixed_weights=fixed)
 
     def _take(self, counts: Counts, solutions: FloatArray) -> bool:
         """Keep the first of the solutions that can be refined to all digits."""

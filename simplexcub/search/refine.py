@@ -34,6 +34,12 @@ def refine(system: System, u: NDArray[np.float64], digits: int) -> Orbits | None
     inverse = np.linalg.pinv(system.evaluate(u[None])[1][0], rcond=_SINGULAR)
     means = system.basis.means_fixed(system.problem.measure, bits)
     exact = np.array([int(math.ldexp(x, 60)) << (bits - 60) for x in u], dtype=object)
+    if system.problem.integers:
+        inverse[: system.orbits] = 0.0  # fixed, but for what the pseudo-inverse makes of their zero columns
+        integers = system.integer_weights(u)
+        sizes = [block.type.size for block in system.blocks for _ in range(block.count)]
+        total = sum(k * size for k, size in zip(integers, sizes, strict=True))
+        exact[: system.orbits] = [(k * size << bits) // total for k, size in zip(integers, sizes, strict=True)]
     goal = 1 << (bits - math.ceil((digits + 6) * math.log2(10)))
     last = None
     for _ in range(_MOST_PASSES):

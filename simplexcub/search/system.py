@@ -6,7 +6,9 @@ per basis function: Σ_orbits weight · φ_i(representative) = E[φ_i].
 
 from __future__ import annotations
 
+import math
 from dataclasses import dataclass
+from fractions import Fraction
 
 import numpy as np
 from numpy.typing import NDArray
@@ -23,12 +25,23 @@ Parts = dict[OrbitType, list[tuple[float, FloatArray]]]  # orbits of one candida
 
 @dataclass(frozen=True)
 class Problem:
-    """What is searched for: a measure, a degree, the symmetry of the node set and orbits that it must have."""
+    """What is searched for.
+
+    Attributes
+    ----------
+    measure, degree, group
+        The measure, the degree and the symmetry of the node set.
+    chosen : tuple of Chosen
+        Orbits that the rule must have.
+    integers : int
+        Weights are integers up to this one over their sum, fixed before the search; 1 makes them equal, 0 free.
+    """
 
     measure: Measure
     degree: int
     group: Group
     chosen: tuple[Chosen, ...] = ()
+    integers: int = 0
 
     @property
     def types(self) -> list[OrbitType]:
@@ -111,6 +124,8 @@ class System:
             slopes = weights[:, :, None, None] * jet[:, :, 1 : 1 + block.free]
             jacobian[:, block.coordinates] = slopes.reshape(batch, block.count * block.free, count)
             residual += np.einsum("br,bre->be", weights, jet[:, :, 0])
+        if self.problem.integers:
+            jacobian[:, : self.orbits] = 0.0
         return residual, jacobian.transpose(0, 2, 1)
 
     def starts(self, rng: np.random.Generator, batch: int) -> FloatArray:
@@ -123,8 +138,19 @@ class System:
             points = rng.dirichlet(np.ones(self.problem.group.n), (batch, block.count))
             u[:, block.coordinates] = random_values(block.type, points)[..., :-1].reshape(batch, -1)
             u[:, block.weights] = block.type.size * rng.uniform(0.5, 1.5, (batch, block.count))
+            if self.problem.integers:
+                shares = rng.integers(1, self.problem.integers + 1, (batch, block.count))
+                u[:, block.weights] = block.type.size * shares
         u[:, : self.orbits] /= u[:, : self.orbits].sum(axis=1, keepdims=True)
         return u
+
+    def integer_weights(self, u: FloatArray) -> list[int]:
+        """Of one candidate with fixed weights, the integers that the weights of its nodes are in proportion to."""
+        sizes = np.concatenate([np.full(block.count, block.type.size) for block in self.blocks])
+        shares = u[: self.orbits] / sizes
+        ratios = [Fraction(x).limit_denominator(self.problem.integers) for x in (shares / shares.min()).tolist()]
+        scale = math.lcm(*(r.denominator for r in ratios))
+        return [int(r * scale) for r in ratios]
 
     def slack(self, u: FloatArray) -> FloatArray:
         """Distances of weights and coordinates from zero; shape (B, constraints)."""

@@ -85,7 +85,12 @@ def describe(counts: Counts) -> str:
 
 def _digest(problem: Problem, *rest: object) -> str:
     chosen = [t.coordinates for t in problem.chosen]
-    asked = (problem.degree, problem.group.name, *([chosen] if chosen else []))
+    asked = (
+        problem.degree,
+        problem.group.name,
+        *([chosen] if chosen else []),
+        *([problem.integers] if problem.integers else []),
+    )
     label = repr((sorted(problem.measure.parameters().items()), *asked, rest))
     return hashlib.sha256(label.encode()).hexdigest()
 
