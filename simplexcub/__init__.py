@@ -37,6 +37,7 @@ _HOME = {
     "polynomial_density": "measures",
     "symplectic": "measures",
     "Rule": "rule",
+    "KnownMean": "search",
     "chebyshev": "search",
     "embed": "search",
     "solve": "search",

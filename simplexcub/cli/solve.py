@@ -43,6 +43,13 @@ def add_options(parser: argparse.ArgumentParser) -> None:
         "--integer-weights", type=whole, default=0, metavar="K", help="weights that are integers up to K over their sum"
     )
     parser.add_argument(
+        "--also",
+        type=listed,
+        default=[],
+        metavar="NAMES",
+        help="exact for these too: entropy, entropy-K (Σ λ^K ln λ), power-Q (Σ λ^Q), separated by commas",
+    )
+    parser.add_argument(
         "--include", type=listed, default=[], metavar="SETS", help=f"nodes that it must have: some of {', '.join(SETS)}"
     )
     parser.add_argument(
@@ -113,6 +120,7 @@ def _solved(args: argparse.Namespace, measure: Measure, show: ProgressLine) -> R
             symmetry=args.symmetry,
             equal_weights=args.equal_weights,
             integer_weights=args.integer_weights,
+            also=args.also,
             include=args.include,
             digits=args.digits,
             seed=args.seed,

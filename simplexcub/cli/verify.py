@@ -84,6 +84,7 @@ def _report(rule: Rule, measure: Measure | None) -> Report:
         "measure": str(measure or rule.measure),
         "claim": f"{claim}, space {rule.space}, {rule.digits} digits",
         "exact": f"to degree {report.exact_degree}, {report.digits} digits; fails at degree {check.fails_at_degree}",
+        **_also(report),
         **_embedded(rule, report.measure),
         "nodes": f"{len(rule)}, at least {check.lower_bound} needed, efficiency {check.lower_bound / len(rule):.2f}",
         "moments": f"{check.moments_checked} compared, largest residual {check.max_residual} at exponents {worst}",
@@ -95,6 +96,11 @@ def _report(rule: Rule, measure: Measure | None) -> Report:
     for name, fact in facts.items():
         print(f"{name:<9} {fact}")
     return report
+
+
+def _also(report: Report) -> dict[str, str]:
+    told = [f"{c.name} off by {c.residual}" if c.residual else f"{c.name} not checked" for c in report.also]
+    return {"also": "; ".join(told)} if told else {}
 
 
 def _embedded(rule: Rule, measure: Measure) -> dict[str, str]:

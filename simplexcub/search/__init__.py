@@ -20,14 +20,15 @@ from simplexcub.search.chebyshev import Chebyshev, chebyshev, chebyshev_rule
 from simplexcub.search.conical import MOST_NODES, conical_count, conical_rule
 from simplexcub.search.driver import Budget, Found, Progress, Search
 from simplexcub.search.embed import embed
+from simplexcub.search.extra import KnownMean
 from simplexcub.search.gauss import gauss_rule
 from simplexcub.search.record import Record
 from simplexcub.search.system import FloatArray
-from simplexcub.search.wish import Wish, fixed_integers, with_integers
+from simplexcub.search.wish import Wish, fixed_integers, with_claims
 from simplexcub.search.workers import Overdue, Workers, local_workers
 from simplexcub.symmetry import Group, named_group
 
-__all__ = ["Chebyshev", "Progress", "chebyshev", "embed", "product_rule", "solve"]
+__all__ = ["Chebyshev", "KnownMean", "Progress", "chebyshev", "embed", "product_rule", "solve"]
 
 _SPACES = ("all",)
 # Node counts measured over degrees 3 to 12: few symmetries first, since that is where the fewest nodes were found.
@@ -48,6 +49,7 @@ def solve(
     symmetry: str = "full",
     equal_weights: bool = False,
     integer_weights: int = 0,
+    also: str | KnownMean | Sequence[str | KnownMean] = (),
     include: str | Sequence[str] = (),
     digits: int = 50,
     seed: int = 0,
@@ -78,6 +80,9 @@ def solve(
         Every node has the weight 1/M. For N = 2 it is decided exactly which numbers of nodes up to degree + 1 serve.
     integer_weights : int
         Weights are integers up to this one, over their sum; 0 leaves them free.
+    also : str or sequence of str or KnownMean
+        Functions to average exactly besides the polynomials: ``entropy`` is Σ λ ln λ, ``entropy-K`` Σ λ^K ln λ,
+        ``power-Q`` Σ λ^Q, and a :class:`KnownMean` any symmetric function with a known mean.
     include : {"vertices", "centre", "edge-midpoints"} or sequence of them
         Nodes that the rule must have, for those who hold values there; their weights are free, but positive.
     digits : int
@@ -117,7 +122,8 @@ def solve(
     _check(degree=degree, space=space, digits=digits, seed=seed, budget=budget, jobs=jobs)
     groups = _groups(measure, symmetry)
     sets = (include,) if isinstance(include, str) else tuple(include)
-    wish = Wish(measure, degree, sets, fixed_integers(equal_weights, integer_weights))
+    more = (also,) if isinstance(also, str | KnownMean) else tuple(also)
+    wish = Wish(measure, degree, sets, fixed_integers(equal_weights, integer_weights), more)
     reason = ""
     if measure.N == 2 and equal_weights:
         try:
@@ -225,7 +231,7 @@ def _rule(found: Found, digits: int, provenance: Provenance) -> Rule:
     if problem.group.is_full:
         orbits = [(t.multiplicities, values, weight) for t, values, weight in found.orbits]
         rule = rule_from_orbits(problem.measure, problem.degree, orbits, digits=digits, provenance=provenance)
-        return with_integers(rule, found)
+        return with_claims(rule, found)
     nodes, weights = _written_out(found, digits)
     rule = rule_from_nodes(
         problem.measure,
@@ -236,7 +242,7 @@ def _rule(found: Found, digits: int, provenance: Provenance) -> Rule:
         provenance=provenance,
         symmetry=problem.group.name,
     )
-    return with_integers(rule, found)
+    return with_claims(rule, found)
 
 
 def _written_out(found: Found, digits: int) -> tuple[list[list[mpf]], list[mpf]]:

@@ -14,8 +14,9 @@ from math import comb
 
 import numpy as np
 
-from simplexcub.invariants import invariant_basis
 from simplexcub.search.chosen import Chosen, stratum
+from simplexcub.search.extended import extended_basis
+from simplexcub.search.extra import Extra
 from simplexcub.symmetry import Group, OrbitType
 
 Counts = tuple[tuple[OrbitType, int], ...]  # (orbit type, how many orbits), types with none left out
@@ -39,10 +40,10 @@ def random_values(type_: OrbitType, points: np.ndarray) -> np.ndarray:
 
 
 @lru_cache(maxsize=256)
-def conditions(group: Group, degree: int) -> list[Condition]:
+def conditions(group: Group, degree: int, also: tuple[Extra, ...] = ()) -> list[Condition]:
     """(types, need): the orbits of these types together must have at least `need` unknowns."""
     types = group.types
-    basis = invariant_basis(group, degree)
+    basis = extended_basis(group, degree, also)
     rng = np.random.default_rng(0)
     spans = {}
     for t in types:
@@ -65,7 +66,13 @@ def allowed(counts: Counts, wanted: list[Condition]) -> bool:
 
 
 def possible_counts(
-    group: Group, degree: int, nodes: int, chosen: tuple[Chosen, ...] = (), *, fixed_weights: bool = False
+    group: Group,
+    degree: int,
+    nodes: int,
+    chosen: tuple[Chosen, ...] = (),
+    *,
+    fixed_weights: bool = False,
+    also: tuple[Extra, ...] = (),
 ) -> list[Counts]:
     """Count vectors of exactly `nodes` nodes that pass every condition, those with most freedom first.
 
@@ -77,7 +84,7 @@ def possible_counts(
     nodes -= node_count(given)
     if nodes < 0:
         return []
-    wanted = [(s, need - sum(stratum(t) in s for t in chosen)) for s, need in conditions(group, degree)]
+    wanted = [(s, need - sum(stratum(t) in s for t in chosen)) for s, need in conditions(group, degree, also)]
     if fixed_weights:
         wanted = [(s, need - (len(s) == len(group.types))) for s, need in wanted]
     taken = {stratum(t) for t in chosen if stratum(t).unknowns == 1}  # a stratum of one point, which is chosen

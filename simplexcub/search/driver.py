@@ -159,7 +159,9 @@ class Search:
 
     def _structures(self, nodes: int) -> list[Counts]:
         problem, fixed = self.problem, self.problem.integers > 0
-        return possible_counts(problem.group, problem.degree, nodes, problem.chosen, fixed_weights=fixed)
+        return possible_counts(
+            problem.group, problem.degree, nodes, problem.chosen, fixed_weights=fixed, also=problem.also
+        )
 
     def _take(self, counts: Counts, solutions: FloatArray) -> bool:
         """Keep the first of the solutions that can be refined to all digits."""

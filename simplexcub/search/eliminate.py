@@ -120,7 +120,7 @@ def advance(problem: Problem, walk: Walk, rng: np.random.Generator) -> Walk:
 def _drop(problem: Problem, walk: Walk) -> tuple[Counts, FloatArray] | None:
     """Solutions with `walk.at_once` orbits fewer, or with one orbit moved to a smaller type; None if there are none."""
     system = System(problem, walk.counts)
-    wanted = conditions(problem.group, problem.degree)
+    wanted = conditions(problem.group, problem.degree, problem.also)
     children: dict[Counts, list[tuple[float, FloatArray]]] = {}
     for u in walk.pool:
         significance = _significance(system, u)

@@ -13,10 +13,12 @@ from fractions import Fraction
 import numpy as np
 from numpy.typing import NDArray
 
-from simplexcub.invariants import Basis, invariant_basis, mean_vector
+from simplexcub.invariants import Basis
 from simplexcub.measures import Measure
 from simplexcub.search.chosen import Chosen
 from simplexcub.search.counts import Counts, random_values
+from simplexcub.search.extended import extended_basis, extended_means
+from simplexcub.search.extra import Extra
 from simplexcub.symmetry import Group, OrbitType
 
 FloatArray = NDArray[np.float64]
@@ -35,6 +37,8 @@ class Problem:
         Orbits that the rule must have.
     integers : int
         Weights are integers up to this one over their sum, fixed before the search; 1 makes them equal, 0 free.
+    also : tuple of Extra
+        Functions to average exactly besides the polynomials.
     """
 
     measure: Measure
@@ -42,6 +46,7 @@ class Problem:
     group: Group
     chosen: tuple[Chosen, ...] = ()
     integers: int = 0
+    also: tuple[Extra, ...] = ()
 
     @property
     def types(self) -> list[OrbitType]:
@@ -51,7 +56,7 @@ class Problem:
 
     @property
     def basis(self) -> Basis:
-        return invariant_basis(self.group, self.degree)
+        return extended_basis(self.group, self.degree, self.also)
 
 
 @dataclass(frozen=True)
@@ -75,7 +80,7 @@ class System:
         self.problem = problem
         self.counts = counts
         self.basis = problem.basis
-        self.means = mean_vector(problem.group, problem.degree, problem.measure)
+        self.means = extended_means(problem.group, problem.degree, problem.also, problem.measure)
         self.blocks: list[Block] = []
         orbits = sum(c for _, c in counts)
         w, x = 0, orbits

@@ -10,6 +10,7 @@ from simplexcub.measures import Measure
 from simplexcub.rule import Rule
 from simplexcub.search.chosen import chosen_orbits
 from simplexcub.search.driver import Found
+from simplexcub.search.extra import KnownMean, read_extras
 from simplexcub.search.system import Problem, System
 from simplexcub.symmetry import Group
 
@@ -24,6 +25,8 @@ class Wish:
     degree : int
     include : tuple of str
         Sets of nodes that the rule must have.
+    also : tuple of str or KnownMean
+        Functions to average exactly besides the polynomials.
     integers : int
         Weights are integers up to this one over their sum; 1 makes them equal, 0 leaves them free.
     """
@@ -32,15 +35,18 @@ class Wish:
     degree: int
     include: tuple[str, ...] = ()
     integers: int = 0
+    also: tuple[str | KnownMean, ...] = ()
 
     def __post_init__(self) -> None:
+        if self.integers and self.also:
+            raise InputError("weights must be free where more than polynomials is averaged exactly", "fixed weights")
         if self.integers and self.include:
             raise InputError("weights must be free where nodes are chosen", "fixed weights", "Leave one of them out.")
 
     @property
     def plain(self) -> bool:
         """Nothing is asked for but measure and degree."""
-        return not (self.include or self.integers)
+        return not (self.include or self.integers or self.also)
 
     @property
     def method(self) -> str:
@@ -61,13 +67,24 @@ class Wish:
             kind = "equal" if self.integers == 1 else f"integer (up to {self.integers})"
             tried = f"in {budget:g} s no structure with {kind} weights was solved inside the simplex"
             raise NothingFound(wanted, tried, "Allow a longer budget, larger integers, a lower degree or free weights.")
+        if self.also:
+            wanted = f"rule of degree {self.degree} for {self.measure}, exact for more than polynomials"
+        if not self.include:
+            tried = f"in {budget:g} s no structure was solved inside the simplex with positive weights"
+            raise NothingFound(wanted, tried, "Ask for fewer functions, a lower degree or a longer budget.")
         wanted += f" with {' and '.join(self.include)} among its nodes"
         tried = f"in {budget:g} s no weights came out positive with all nodes inside"
         raise NothingFound(wanted, tried, "Choose fewer nodes, a lower degree, a longer budget or less symmetry.")
 
     def problem(self, group: Group) -> Problem:
         """The problem for one symmetry group."""
-        return Problem(self.measure, self.degree, group, chosen_orbits(self.include, group), self.integers)
+        also = read_extras(self.also, self.measure, group)
+        problem = Problem(self.measure, self.degree, group, chosen_orbits(self.include, group), self.integers, also)
+        for extra in also:
+            low = min((x for orbit in problem.chosen for x in orbit.coordinates), default=1)
+            if low == 0 and extra.label.power is not None and extra.label.power <= 0:
+                raise InputError(f"{extra.label.formula} must be finite at the chosen nodes", ", ".join(self.include))
+        return problem
 
 
 def fixed_integers(equal_weights: bool, integer_weights: int) -> int:
@@ -85,8 +102,9 @@ def fixed_integers(equal_weights: bool, integer_weights: int) -> int:
     return 1 if equal_weights else integer_weights
 
 
-def with_integers(rule: Rule, found: Found) -> Rule:
-    """The rule with its claim of equal or integer weights, where the search had fixed them."""
+def with_claims(rule: Rule, found: Found) -> Rule:
+    """The rule with what it claims besides its degree: more functions; equal or integer weights, where fixed."""
+    rule = replace(rule, also=tuple(extra.label.name for extra in found.problem.also))
     if not found.problem.integers:
         return rule
     integers = System(found.problem, found.counts).integer_weights(found.candidate)

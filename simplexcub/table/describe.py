@@ -10,8 +10,10 @@ from simplexcub.entropic import named
 from simplexcub.measures import Measure
 from simplexcub.rule import Rule, Verification
 from simplexcub.table.sheet import SECOND
+from simplexcub.verify.embedded import embedded_faults
+from simplexcub.verify.entropic import also_faults
 from simplexcub.verify.printed import read_printed
-from simplexcub.verify.structure import claim_faults, node_faults, weight_faults
+from simplexcub.verify.structure import claim_faults, is_invariant, node_faults, weight_faults
 
 EXACT_FOR = {
     "all": "every polynomial of degree ≤ {}",
@@ -98,7 +100,14 @@ def status(rule: Rule) -> str:
     printed = read_printed(rule)
     weights = weight_faults(printed, equal=rule.equal_weights)
     faults = [*weights, *node_faults(printed), *claim_faults(rule, printed)]
-    return f"NOT VERIFIED: {'; '.join(faults)}" if faults else "verified"
+    faults += also_faults(rule, rule.measure, printed)
+    faults += embedded_faults(
+        rule, rule.measure, printed, invariant=rule.measure.is_symmetric and is_invariant(printed)
+    )
+    if faults:
+        return f"NOT VERIFIED: {'; '.join(faults)}"
+    unknown = [name for name in rule.also if name.startswith("user:")]
+    return f"verified, but for {', '.join(unknown)}, of which a table has only the name" if unknown else "verified"
 
 
 def facts(rule: Rule) -> list[Fact]:

@@ -11,10 +11,12 @@ import math
 from collections.abc import Iterator
 from fractions import Fraction
 
+from simplexcub.entropic import named
 from simplexcub.errors import InputError
 from simplexcub.measures import Measure
 from simplexcub.rule import Rule, Space
 from simplexcub.verify.printed import Printed, read_printed
+from simplexcub.verify.proof_entropic import ExtendedSystem
 from simplexcub.verify.proof_newton import NotProven, find_zero
 from simplexcub.verify.proof_orbits import Structure, find_structure
 from simplexcub.verify.proof_result import Proof, conclude
@@ -86,8 +88,13 @@ def prove(
     structure = find_structure(snapped, against, rule.space)
     shares = fixed_shares(rule, printed, [orbit.first for orbit in structure.orbits])
     method = NEWTON
+    also = [named(name) for name in rule.also]
     try:
+        if any(label.power is None for label in also):
+            raise NotProven("of a function of the user's only the name is known")
         system = _system(structure, against, wanted, rule.space, shares, len(rule))
+        if also:
+            system = ExtendedSystem(system, also, against)
         exact = _rational(system, snapped)
         if exact is not None:
             method = RATIONAL
