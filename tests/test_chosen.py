@@ -71,7 +71,7 @@ def test_lobatto(n: int) -> None:
 def test_the_nodes_are_there_with_positive_weights(
     measure: Measure, degree: int, include: tuple[str, ...], symmetry: str
 ) -> None:
-    rule = sc.solve(measure, degree, include=include, symmetry=symmetry, budget=10)
+    rule = sc.solve(measure, degree, include=include, symmetry=symmetry, budget=3)
     n = measure.N
     wanted = {
         "vertices": {tuple(float(i == k) for i in range(n)) for k in range(n)},

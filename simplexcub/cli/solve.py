@@ -19,6 +19,7 @@ from simplexcub.search import embed, solve
 from simplexcub.search.chosen import SETS
 from simplexcub.symmetry import NAMES
 from simplexcub.table import efficiency, format_of, render, save
+from simplexcub.table.kind import kind_of
 from simplexcub.verify import verify
 
 EXAMPLE = "simplexcub solve hilbert-schmidt -N 3 -t 7 -o hs.json"
@@ -151,4 +152,7 @@ def _summary(rule: Rule) -> str:
     if check:
         share = efficiency(check.lower_bound, len(rule))
         found = f", at least {check.lower_bound} needed (efficiency {share}), residual {check.max_residual}"
-    return f"{rule.measure}, {rule.space}, degree {rule.degree}: {len(rule)} nodes, {rule.digits} digits{found}"
+    special = kind_of(rule).told
+    return (
+        f"{rule.measure}, {rule.space}, degree {rule.degree}{special}: {len(rule)} nodes, {rule.digits} digits{found}"
+    )

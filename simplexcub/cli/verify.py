@@ -15,6 +15,7 @@ from simplexcub.measures import Measure
 from simplexcub.rule import Rule
 from simplexcub.table import read, save
 from simplexcub.table.formats import format_of
+from simplexcub.table.kind import kind_of
 from simplexcub.table.reading import read_bare
 from simplexcub.verify import verify
 from simplexcub.verify.check import Report
@@ -82,7 +83,7 @@ def _report(rule: Rule, measure: Measure | None) -> Report:
     facts = {
         "verified": "yes" if report.holds else "no",
         "measure": str(measure or rule.measure),
-        "claim": f"{claim}, space {rule.space}, {rule.digits} digits",
+        "claim": f"{claim}, space {rule.space}, {rule.digits} digits{kind_of(rule).told}",
         "exact": f"to degree {report.exact_degree}, {report.digits} digits; fails at degree {check.fails_at_degree}",
         **_also(report),
         **_embedded(rule, report.measure),

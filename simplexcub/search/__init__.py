@@ -24,7 +24,7 @@ from simplexcub.search.extra import KnownMean
 from simplexcub.search.gauss import gauss_rule
 from simplexcub.search.record import Record
 from simplexcub.search.system import FloatArray
-from simplexcub.search.wish import Wish, fixed_integers, with_claims
+from simplexcub.search.wish import Wish, fixed_integers, make_wish, with_claims
 from simplexcub.search.workers import Overdue, Workers, local_workers
 from simplexcub.symmetry import Group, named_group
 
@@ -121,9 +121,9 @@ def solve(
     """
     _check(degree=degree, space=space, digits=digits, seed=seed, budget=budget, jobs=jobs)
     groups = _groups(measure, symmetry)
-    sets = (include,) if isinstance(include, str) else tuple(include)
-    more = (also,) if isinstance(also, str | KnownMean) else tuple(also)
-    wish = Wish(measure, degree, sets, fixed_integers(equal_weights, integer_weights), more)
+    wish = make_wish(measure, degree, symmetry, include, also, fixed_integers(equal_weights, integer_weights))
+    if jobs > 1 or executor is not None:
+        wish.check_portable()
     reason = ""
     if measure.N == 2 and equal_weights:
         try:

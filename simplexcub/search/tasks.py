@@ -91,7 +91,7 @@ def _digest(problem: Problem, *rest: object) -> str:
         *([chosen] if chosen else []),
         *([problem.integers] if problem.integers else []),
     )
-    asked += tuple(extra.label.name for extra in problem.also)
+    asked += tuple(f"{extra.label.name} {'' if extra.user is None else extra.user.mean}" for extra in problem.also)
     label = repr((sorted(problem.measure.parameters().items()), *asked, rest))
     return hashlib.sha256(label.encode()).hexdigest()
 

@@ -2,6 +2,8 @@
 
 from __future__ import annotations
 
+import pickle
+from collections.abc import Sequence
 from dataclasses import dataclass, replace
 from typing import NoReturn
 
@@ -55,6 +57,23 @@ class Wish:
         wishes += {0: [], 1: ["equal weights"]}.get(self.integers, [f"integer weights up to {self.integers}"])
         return " with ".join(["orbit search", *wishes])
 
+    def check_portable(self) -> None:
+        """Refuse functions that no other process could be sent.
+
+        Raises
+        ------
+        InputError
+        """
+        for item in self.also:
+            try:
+                pickle.dumps(item)
+            except (pickle.PicklingError, AttributeError, TypeError):
+                name = item.name if isinstance(item, KnownMean) else item
+                remedy = "Define it at the top of a module, or search with jobs=1."
+                raise InputError(
+                    f"{name} must be a function that other processes can load", "a local one", remedy
+                ) from None
+
     def give_up(self, budget: float) -> NoReturn:
         """Say that no rule was found.
 
@@ -87,6 +106,21 @@ class Wish:
         return problem
 
 
+def make_wish(
+    measure: Measure,
+    degree: int,
+    symmetry: str,
+    include: str | Sequence[str],
+    also: str | KnownMean | Sequence[str | KnownMean],
+    integers: int,
+) -> Wish:
+    """The wish from the arguments of a search; a symmetric rule on two components has an odd degree anyway."""
+    sets = (include,) if isinstance(include, str) else tuple(include)
+    functions = (also,) if isinstance(also, str | KnownMean) else tuple(also)
+    odd = measure.N == 2 and measure.is_symmetric and symmetry == "full"
+    return Wish(measure, degree | 1 if odd else degree, sets, integers, functions)
+
+
 def fixed_integers(equal_weights: bool, integer_weights: int) -> int:
     """The largest integer that a fixed weight may be: 1 for equal weights, 0 for free ones.
 
@@ -96,7 +130,7 @@ def fixed_integers(equal_weights: bool, integer_weights: int) -> int:
         Both are asked for, or an integer out of range.
     """
     if isinstance(integer_weights, bool) or not isinstance(integer_weights, int) or not 0 <= integer_weights <= 1000:
-        raise InputError("integer_weights must be an integer of at most 1000", integer_weights)
+        raise InputError("integer_weights must be an integer between 0 and 1000", integer_weights)
     if equal_weights and integer_weights:
         raise InputError("weights must be equal or integers, not both", f"equal and up to {integer_weights}")
     return 1 if equal_weights else integer_weights

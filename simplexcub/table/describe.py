@@ -68,7 +68,8 @@ class Fact(NamedTuple):
 
 def heading(rule: Rule) -> str:
     """What the rule is, in a few words."""
-    return f"{measure_name(rule.measure)}, degree {rule.degree}, {counted(len(rule), 'node')}"
+    further = "".join(f" and {named(name).formula}" for name in rule.also)
+    return f"{measure_name(rule.measure)}, degree {rule.degree}{further}, {counted(len(rule), 'node')}"
 
 
 def measure_name(measure: Measure) -> str:
