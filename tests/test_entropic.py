@@ -25,6 +25,7 @@ from simplexcub.symmetry import named_group
 from simplexcub.table import render
 from simplexcub.table.reading import parse
 from simplexcub.verify.entropic import mean_of
+from simplexcub.verify.mend import mend
 from simplexcub.verify.printed import read_printed
 from simplexcub.verify.proof import _system
 from simplexcub.verify.proof_entropic import ExtendedSystem
@@ -107,9 +108,10 @@ def test_rules_are_verified_and_proven(measure: Measure, degree: int, also: list
 def test_means_by_a_second_formula(measure: Measure, name: str) -> None:
     label = named(name)
     assert label.power is not None
-    with mp.workdps(60):
-        first = measure.log_mean(int(label.power)).value(50) if label.logarithm else measure.power_mean(label.power)
-        assert abs(mean_of(label, measure, 50) - first) < mpf(10) ** -48 * (1 + abs(first))
+    q = label.power
+    with mp.workdps(130):
+        first = measure.log_mean(int(q)).value(120) if label.logarithm else measure.power_mean(q, dps=120)
+        assert abs(mean_of(label, measure, 120) - first) < mpf(10) ** -117 * (1 + abs(first))
 
 
 def test_a_plain_rule_that_claims_the_entropy_is_caught() -> None:
@@ -269,3 +271,24 @@ def test_names_have_one_spelling() -> None:
         *("entropy", "power-1/2", "power-1/2", "entropy-7")
     ]
     assert math.isclose(float(named("power--1/3").power or 0), -1 / 3)
+
+
+def test_local_functions_are_not_sent_to_other_processes() -> None:
+    mine = sc.KnownMean("cubes", lambda x: mp.fsum(v**3 for v in x), "0.3")
+    with pytest.raises(InputError, match="cubes must be a function that other processes can load"):
+        sc.solve(flat(3), 2, also=mine, jobs=2)
+
+
+def test_mending_keeps_the_functions(entropic: Rule) -> None:
+    short = replace(
+        entropic,
+        node_decimals=tuple(tuple(x[:14] for x in node) for node in entropic.node_decimals),
+        weight_decimals=tuple(w[:14] for w in entropic.weight_decimals),
+        orbits=(),
+        digits=12,
+    )
+    mended = mend(short)
+    assert mended.also == ("entropy",)
+    with mp.workdps(50):
+        mean = page(3, 3)
+        assert abs(exact_mean(mended, entropy) - mpf(mean.numerator) / mean.denominator) < mpf(10) ** -48

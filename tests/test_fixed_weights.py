@@ -140,3 +140,11 @@ def test_options_of_the_command(call: Call, tmp_path: Path) -> None:
     assert call("solve", "flat", "-N", 2, "-t", 8, "--integer-weights", 3, "-o", path)[0] == 0
     assert sc.read(path).integer_weights
     assert call("verify", path)[0] == 0
+
+
+def test_the_exact_decision_is_told_when_the_search_fails_as_well() -> None:
+    with pytest.raises(NothingFound, match=r"11 nodes of equal weight and degree 11 do not exist.*in 1e-09 s"):
+        sc.solve(flat(2), 10, equal_weights=True, budget=1e-9)
+    found = sc.solve(flat(2), 10, equal_weights=True, budget=3)
+    assert found.degree == 11
+    assert found.provenance.method.startswith("orbit search with equal weights; 10 nodes of equal weight and degree 10")

@@ -129,7 +129,7 @@ def solve(
         try:
             return chebyshev_rule(measure, degree, digits=digits, provenance=_provenance(seed, ""))
         except NothingFound as none:
-            reason = f"; {none.tried}"
+            reason = f"{none.tried}; "
     if measure.N == 2 and wish.plain:
         return product_rule(measure, degree, digits=digits, seed=seed)
     record = None if resume is None else Record(resume)
@@ -140,9 +140,9 @@ def solve(
         workers = Workers(lambda: executor, jobs, record, owned=False)
         found = _search(groups, wish, digits, seed, budget, workers, progress)
     if found is not None:
-        return _rule(found, digits, _provenance(seed, wish.method + reason))
+        return _rule(found, digits, _provenance(seed, f"{wish.method}; {reason}".removesuffix("; ")))
     if not wish.plain:
-        wish.give_up(budget)
+        wish.give_up(budget, reason)
     return product_rule(measure, degree, digits=digits, seed=seed)
 
 

@@ -74,8 +74,8 @@ class Wish:
                     f"{name} must be a function that other processes can load", "a local one", remedy
                 ) from None
 
-    def give_up(self, budget: float) -> NoReturn:
-        """Say that no rule was found.
+    def give_up(self, budget: float, reason: str = "") -> NoReturn:
+        """Say that no rule was found, after what was known before the search.
 
         Raises
         ------
@@ -84,7 +84,7 @@ class Wish:
         wanted = f"rule of degree {self.degree} for {self.measure}"
         if self.integers:
             kind = "equal" if self.integers == 1 else f"integer (up to {self.integers})"
-            tried = f"in {budget:g} s no structure with {kind} weights was solved inside the simplex"
+            tried = f"{reason}in {budget:g} s no structure with {kind} weights was solved inside the simplex"
             raise NothingFound(wanted, tried, "Allow a longer budget, larger integers, a lower degree or free weights.")
         if self.also:
             wanted = f"rule of degree {self.degree} for {self.measure}, exact for more than polynomials"

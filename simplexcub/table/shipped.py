@@ -84,7 +84,7 @@ def folder() -> Path:
 
 
 def catalogue(family: str | None = None, *, N: int | None = None, space: str | None = None) -> tuple[Shipped, ...]:
-    """The shipped tables, sorted by measure, N, space and degree.
+    """The shipped tables, sorted by measure, N, space, what is special, and degree.
 
     Parameters
     ----------
@@ -264,6 +264,7 @@ def _order(line: Shipped) -> tuple[object, ...]:
         line.N,
         *parameters,
         SPACES.index(line.space),
+        line.kind.told,  # plain ones first
         line.degree,
         line.nodes,
         line.file,

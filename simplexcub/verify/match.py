@@ -30,6 +30,6 @@ def match(rule: Rule) -> list[Report]:
     rule : Rule
         In space ``all`` or ``symmetric``.
     """
-    bare = replace(rule, degree=0, orbits=(), equal_weights=False)
+    bare = replace(rule, degree=0, orbits=(), equal_weights=False, also=(), integer_weights=(), embedded=None)
     found = [verify(replace(bare, measure=measure)) for measure in candidates(rule.measure.N)]
     return sorted(found, key=lambda report: -report.exact_degree)

@@ -1,8 +1,8 @@
 """Errors of entropic rules beside plain ones with as many nodes: ``python tests/benchmarks/entropic.py``.
 
-The functions are the von Neumann entropy, which the entropic rule averages exactly, and two that it does not: the Rényi
-entropy of order 1/2 and the variance of −ln λ (the capacity of entanglement). Their means come from a conical product of
-high degree, good to about 1e-5; the entropy's is exact.
+The functions are the von Neumann entropy, which the entropic rule averages exactly, and two that it does not: the
+Rényi entropy of order 1/2 and the variance of −ln λ (the capacity of entanglement). Their means come from a conical
+product of high degree, good to about 1e-5; the entropy's is exact.
 """
 
 from __future__ import annotations
