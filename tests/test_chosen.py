@@ -60,12 +60,12 @@ def test_lobatto(n: int) -> None:
 @pytest.mark.parametrize(
     ("measure", "degree", "include", "symmetry"),
     [
-        (flat(3), 4, ("vertices", "centre"), "cyclic"),
+        (flat(3), 3, ("vertices", "centre"), "cyclic"),
         (flat(3), 3, ("vertices",), "none"),
         (bures(3), 5, ("edge-midpoints",), "full"),
         (hilbert_schmidt(4), 3, ("vertices", "edge-midpoints"), "full"),
         (dirichlet([1, 1, 2]), 3, ("vertices",), "full"),
-        (flat(3), 4, ("vertices", "edge-midpoints"), "stabiliser"),
+        (flat(3), 3, ("vertices", "edge-midpoints"), "stabiliser"),
     ],
 )
 def test_the_nodes_are_there_with_positive_weights(

@@ -35,7 +35,7 @@ from simplexcub.table.reading import parse
     ],
 )
 def test_equal_weights(measure: Measure, degree: int, most: int) -> None:
-    rule = sc.solve(measure, degree, equal_weights=True, budget=10)
+    rule = sc.solve(measure, degree, equal_weights=True, budget=3)
     assert rule.equal_weights
     assert len(rule) <= most
     assert {Fraction(w) for w in rule.weight_decimals} == {Fraction(rule.weight_decimals[0])}
