@@ -33,7 +33,7 @@ def main() -> None:
     """Print the table as Markdown."""
     print("| measure | rule | nodes | " + " | ".join(FUNCTIONS) + " |")
     print("|---|---|---|" + "---|" * len(FUNCTIONS))
-    for measure in (sc.flat(3), sc.hilbert_schmidt(3), sc.bures(3)):
+    for measure in (sc.flat(3), sc.hilbert_schmidt(3)):
         reference = product_rule(measure, 255, digits=20)
         means = {name: reference.average(f) for name, f in FUNCTIONS.items()}
         means["von Neumann"] = float(measure.entropy().value(20))
