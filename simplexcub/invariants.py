@@ -159,13 +159,3 @@ def basis_for(group: Group, degree: int, measure: Measure) -> Basis:
     if isinstance(group, Spectra) and group.n > FEW_COMPONENTS:
         return spectral_basis(measure, degree)
     return invariant_basis(group, degree)
-
-
-@lru_cache(maxsize=64)
-def mean_vector(group: Group, degree: int, measure: Measure) -> FloatArray:
-    """E[φ] of every invariant in double precision, rounded once from exact moments."""
-    bits = 120
-    basis = basis_for(group, degree, measure)
-    means = np.array([math.ldexp(float(m), -bits) for m in basis.means_fixed(measure, bits)])
-    means.flags.writeable = False
-    return means

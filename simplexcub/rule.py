@@ -16,10 +16,9 @@ from mpmath import mp, mpf
 from numpy.typing import NDArray
 
 from simplexcub import hooks
-from simplexcub.decimals import to_decimal
+from simplexcub.embedded import Embedded, Estimate
 from simplexcub.errors import InputError
 from simplexcub.measures import Measure
-from simplexcub.symmetry import distinct_permutations, orbit_size
 
 Space = Literal["all", "symmetric", "ordered"]
 FloatArray = NDArray[np.float64]
@@ -100,6 +99,12 @@ class Rule:
         Significant digits of every decimal.
     orbits : tuple of Orbit
         The same nodes, one entry per orbit, where the symmetry is full.
+    also : tuple of str
+        Functions that it averages exactly besides the polynomials, by their names in :mod:`simplexcub.entropic`.
+    integer_weights : tuple of int
+        Where all weights are small integers over their sum, these integers.
+    embedded : Embedded or None
+        A second set of weights of lower degree.
     """
 
     measure: Measure
@@ -112,11 +117,22 @@ class Rule:
     equal_weights: bool = False
     digits: int = 50
     orbits: tuple[Orbit, ...] = ()
+    also: tuple[str, ...] = ()
+    integer_weights: tuple[int, ...] = ()
+    embedded: Embedded | None = None
     verification: Verification | None = field(default=None, compare=False)
 
     def __post_init__(self) -> None:
         if len(self.node_decimals) != len(self.weight_decimals):
             raise InputError("there must be one weight per node", f"{len(self.weight_decimals)} weights")
+        for name, column in (
+            ("embedded weight", self.embedded and self.embedded.weight_decimals),
+            ("integer weight", self.integer_weights),
+        ):
+            if column and len(column) != len(self.node_decimals):
+                raise InputError(f"there must be one {name} per node", f"{len(column)} weights")
+        if any(k < 1 for k in self.integer_weights):
+            raise InputError("integer weights must be at least 1", min(self.integer_weights))
         if not self.node_decimals:
             raise InputError("a rule must have at least one node", 0)
         for node in self.node_decimals:
@@ -142,6 +158,19 @@ class Rule:
     def weights(self) -> FloatArray:
         """Weights, shape (M,), float64, read-only."""
         return _frozen([float(w) for w in self.weight_decimals])
+
+    @cached_property
+    def embedded_weights(self) -> FloatArray:
+        """The second set of weights, shape (M,), float64, read-only.
+
+        Raises
+        ------
+        InputError
+            The rule has none.
+        """
+        if self.embedded is None:
+            raise InputError("the rule must have embedded weights", self, "Make them: embed(rule).")
+        return _frozen([float(w) for w in self.embedded.weight_decimals])
 
     def exact_nodes(self, dps: int | None = None) -> list[list[mpf]]:
         """Nodes as mpmath numbers, rounded to `dps` digits (all digits of the table by default)."""
@@ -174,6 +203,34 @@ class Rule:
         InputError
             `f` returned an array whose first axis is not the nodes.
         """
+        return self._sum(self.weights, self._values(f))
+
+    def estimate(self, f: Callable[[FloatArray], Any]) -> Estimate:
+        """The mean of `f`, and its difference from the mean by the embedded weights, from one set of evaluations.
+
+        The error is that of the embedded weights, so the value itself is usually much better than it says.
+
+        Parameters
+        ----------
+        f : callable
+            As for :meth:`average`.
+
+        Returns
+        -------
+        Estimate
+            ``value`` and ``error``, each as :meth:`average` returns it.
+
+        Raises
+        ------
+        InputError
+            The rule has no embedded weights, or `f` returned an array whose first axis is not the nodes.
+        """
+        second = self.embedded_weights
+        values = self._values(f)
+        value = self._sum(self.weights, values)
+        return Estimate(value, abs(value - self._sum(second, values)))
+
+    def _values(self, f: Callable[[FloatArray], Any]) -> NDArray[Any]:
         values = np.asarray(f(self.nodes))
         if values.shape[:1] != (len(self),):
             raise InputError(
@@ -181,96 +238,15 @@ class Rule:
                 f"shape {values.shape}",
                 "f receives all nodes at once, shape (M, N); reduce over the last axis.",
             )
-        mean = np.tensordot(self.weights, values, axes=1)
+        return values
+
+    def _sum(self, weights: FloatArray, values: NDArray[Any]) -> Any:
+        mean = np.tensordot(weights, values, axes=1)
         return mean.item() if mean.ndim == 0 else mean
 
     def verified(self, verification: Verification) -> Rule:
         """The same rule with a verification block."""
         return replace(self, verification=verification)
-
-
-def rule_from_orbits(
-    measure: Measure,
-    degree: int,
-    orbits: Sequence[tuple[tuple[int, ...], Sequence[mpf], mpf]],
-    *,
-    digits: int,
-    provenance: Provenance,
-) -> Rule:
-    """A fully symmetric rule from (multiplicities, distinct values, weight of the orbit), each node written out."""
-    printed, nodes, weights = [], [], []
-    for multiplicities, values, weight in orbits:
-        texts = tuple(to_decimal(v, digits) for v in values)
-        printed.append(Orbit(multiplicities, texts, to_decimal(weight, digits)))
-        size = orbit_size(multiplicities)
-        with mp.workdps(digits + 10):
-            share = to_decimal(weight / size, digits)
-        labels = [j for j, m in enumerate(multiplicities) for _ in range(m)]
-        for order in distinct_permutations(labels):
-            nodes.append(tuple(texts[j] for j in order))
-            weights.append(share)
-    return Rule(
-        measure, degree, tuple(nodes), tuple(weights), provenance, symmetry="full", digits=digits, orbits=tuple(printed)
-    )
-
-
-def rule_from_representatives(
-    measure: Measure,
-    degree: int,
-    orbits: Sequence[tuple[tuple[int, ...], Sequence[mpf], mpf]],
-    *,
-    digits: int,
-    provenance: Provenance,
-) -> Rule:
-    """A rule for symmetric functions from (multiplicities, distinct values, weight of the orbit): one node for each."""
-    printed = []
-    for multiplicities, values, weight in orbits:
-        sizes: list[int] = []
-        texts: list[str] = []
-        for value, m in sorted(zip(values, multiplicities, strict=True), reverse=True):
-            text = to_decimal(value, digits)
-            if texts and texts[-1] == text:
-                sizes[-1] += m
-            else:
-                texts.append(text)
-                sizes.append(m)
-        printed.append(Orbit(tuple(sizes), tuple(texts), to_decimal(weight, digits)))
-    return Rule(
-        measure,
-        degree,
-        tuple(tuple(t for t, m in zip(o.values, o.multiplicities, strict=True) for _ in range(m)) for o in printed),
-        tuple(orbit.weight for orbit in printed),
-        provenance,
-        space="symmetric",
-        symmetry="full",
-        digits=digits,
-        orbits=tuple(printed),
-    )
-
-
-def rule_from_nodes(
-    measure: Measure,
-    degree: int,
-    nodes: Sequence[Sequence[mpf]],
-    weights: Sequence[mpf],
-    *,
-    digits: int,
-    provenance: Provenance,
-    space: Space = "all",
-    symmetry: str = "none",
-) -> Rule:
-    """A rule from nodes, shape (M, N), and weights, shape (M,), in extended precision."""
-    printed = tuple(tuple(to_decimal(x, digits) for x in node) for node in nodes)
-    return Rule(
-        measure,
-        degree,
-        printed,
-        tuple(to_decimal(w, digits) for w in weights),
-        provenance,
-        space=space,
-        symmetry=symmetry,
-        digits=digits,
-    )
 
 
 def _frozen(values: Sequence[Any]) -> FloatArray:

@@ -12,7 +12,8 @@ from mpmath import mp, mpf
 from simplexcub.decimals import to_decimal
 from simplexcub.errors import InputError
 from simplexcub.measures import bures, dirichlet, flat, hilbert_schmidt
-from simplexcub.rule import Provenance, Rule, rule_from_orbits
+from simplexcub.rounded import rule_from_orbits
+from simplexcub.rule import Provenance, Rule
 from simplexcub.table import read
 from simplexcub.table.formats import render
 from simplexcub.table.reading import parse
@@ -300,7 +301,7 @@ def test_gradients_are_those_of_the_values(kind):
     rule = rules[kind]
     structure = structure_of(rule)
     system_type = PowerSumSystem if structure.full else MonomialSystem
-    system = system_type(structure, rule.measure, 4, rule.space, False, len(rule))
+    system = system_type(structure, rule.measure, 4, rule.space, None)
     bits, step = 160, 1 << 80
     x = [round((Fraction(1, 7) + Fraction(j, 50)) * 2**bits) for j in range(len(system.unknowns))]
     one = system.factor << bits
@@ -321,7 +322,7 @@ def test_the_curvature_bounds_differences_of_gradients(kind):
     rule = {"full": radon(20), "none": two_point_gauss((1, 2))}[kind]
     structure = structure_of(rule)
     system_type = PowerSumSystem if structure.full else MonomialSystem
-    system = system_type(structure, rule.measure, 5, rule.space, False, len(rule))
+    system = system_type(structure, rule.measure, 5, rule.space, None)
     bits, radius = 80, 1e-3
     rng = np.random.default_rng(0)
     at = []

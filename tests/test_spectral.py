@@ -6,8 +6,9 @@ import numpy as np
 import pytest
 
 from simplexcub.basis import fixed_point
-from simplexcub.invariants import basis_for, invariant_basis, mean_vector
+from simplexcub.invariants import basis_for, invariant_basis
 from simplexcub.measures import bures, flat, hilbert_schmidt, induced
+from simplexcub.search.extended import extended_means
 from simplexcub.spectral import spectral_basis
 from simplexcub.symmetry import OrbitType, named_group, spectra
 
@@ -31,8 +32,8 @@ def test_the_same_space_and_the_same_means_as_the_basis_for_few_components(measu
     change, _, rank, _ = np.linalg.lstsq(left, right, rcond=None)
     assert len(few) == len(many) == rank
     assert left @ change == pytest.approx(right, abs=1e-8)
-    means = mean_vector(named_group("full", measure.N), 6, measure)
-    assert means @ change == pytest.approx(mean_vector(spectra(measure.N), 6, measure), abs=1e-8)
+    means = extended_means(named_group("full", measure.N), 6, (), measure)
+    assert means @ change == pytest.approx(extended_means(spectra(measure.N), 6, (), measure), abs=1e-8)
 
 
 @pytest.mark.parametrize("sizes", [(1,) * 9, (4, 3, 2), (9,)], ids=str)

@@ -12,7 +12,8 @@ from mpmath import mp, mpf
 import simplexcub
 from simplexcub.errors import InputError, TableError
 from simplexcub.measures import dirichlet, flat, hilbert_schmidt, induced
-from simplexcub.rule import Orbit, Provenance, Rule, rule_from_orbits
+from simplexcub.rounded import rule_from_orbits
+from simplexcub.rule import Orbit, Provenance, Rule
 from simplexcub.table import FORMATS, format_of, parse, read, render, save
 from simplexcub.table.as_json import checksum
 from simplexcub.verify import verify

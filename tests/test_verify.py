@@ -11,7 +11,8 @@ import simplexcub
 from simplexcub.decimals import to_decimal
 from simplexcub.errors import InputError
 from simplexcub.measures import bures, dirichlet, flat, hilbert_schmidt, induced
-from simplexcub.rule import Provenance, Rule, rule_from_orbits
+from simplexcub.rounded import rule_from_orbits
+from simplexcub.rule import Provenance, Rule
 from simplexcub.verify import lower_bound, verify
 from simplexcub.verify.bounds import dimension
 

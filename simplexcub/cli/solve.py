@@ -9,16 +9,18 @@ from pathlib import Path
 from simplexcub.cli.cluster import cluster_executor
 from simplexcub.cli.interrupt import InterruptNoted
 from simplexcub.cli.measure import add_measure, measure_of
-from simplexcub.cli.options import duration, whole
+from simplexcub.cli.options import duration, listed, whole
 from simplexcub.cli.output import ProgressLine, require_writable
 from simplexcub.cli.speech import complain
 from simplexcub.errors import InputError
 from simplexcub.measures import Measure
 from simplexcub.rule import Rule
-from simplexcub.search import solve
+from simplexcub.search import embed, solve
+from simplexcub.search.chosen import SETS
 from simplexcub.symmetry import NAMES
 from simplexcub.table import efficiency, format_of, render, save
 from simplexcub.table.describe import counted, noun
+from simplexcub.table.kind import kind_of
 from simplexcub.table.record import SPACES
 from simplexcub.verify import verify
 
@@ -42,6 +44,23 @@ def add_options(parser: argparse.ArgumentParser) -> None:
         metavar="NAME",
         help=f"symmetry of the node set: one of {', '.join(NAMES)}, or best, which tries several and keeps the"
         " fewest nodes (default full)",
+    )
+    parser.add_argument("--equal-weights", action="store_true", help="the weight 1/M for each of M nodes")
+    parser.add_argument(
+        "--integer-weights", type=whole, default=0, metavar="K", help="weights that are integers up to K over their sum"
+    )
+    parser.add_argument(
+        "--also",
+        type=listed,
+        default=[],
+        metavar="NAMES",
+        help="exact for these too: entropy, entropy-K (Σ λ^K ln λ), power-Q (Σ λ^Q), separated by commas",
+    )
+    parser.add_argument(
+        "--include", type=listed, default=[], metavar="SETS", help=f"nodes that it must have: some of {', '.join(SETS)}"
+    )
+    parser.add_argument(
+        "--embedded", action="store_true", help="a second column of weights, of lower degree, that tells the error"
     )
     parser.add_argument("--digits", type=whole, default=50, metavar="D", help="significant digits (default 50)")
     parser.add_argument(
@@ -73,6 +92,8 @@ def run(args: argparse.Namespace) -> int:
         require_writable(args.output)
     with InterruptNoted() as interrupted, ProgressLine() as show:
         rule = _solved(args, measure, show)
+        if args.embedded:
+            rule = embed(rule)
         report = verify(rule, prove=True, progress=show)
     rule = rule.verified(report.verification)
     if rule.provenance.method == "conical product":
@@ -80,6 +101,9 @@ def run(args: argparse.Namespace) -> int:
             f"no smaller rule was found in time; this is the conical product rule of {counted(len(rule), noun(rule))}."
             " A longer --budget or another --seed may find fewer"
         )
+    _, _, remark = rule.provenance.method.partition("; ")
+    if remark:
+        complain(f"{remark}; here are {len(rule)} nodes of equal weight, degree {rule.degree}")
     _deliver(rule, args.output)
     if not report.holds:
         complain(f"the rule was not verified: {'; '.join(report.reasons)}")
@@ -101,6 +125,10 @@ def _solved(args: argparse.Namespace, measure: Measure, show: ProgressLine) -> R
             args.degree,
             space=args.space,
             symmetry=args.symmetry,
+            equal_weights=args.equal_weights,
+            integer_weights=args.integer_weights,
+            also=args.also,
+            include=args.include,
             digits=args.digits,
             seed=args.seed,
             budget=args.budget,
@@ -131,4 +159,5 @@ def _summary(rule: Rule) -> str:
         share = efficiency(check.lower_bound, len(rule))
         found = f", at least {check.lower_bound} needed (efficiency {share}), residual {check.max_residual}"
     size = counted(len(rule), noun(rule))
-    return f"{rule.measure}, {rule.space}, degree {rule.degree}: {size}, {rule.digits} digits{found}"
+    special = kind_of(rule).told
+    return f"{rule.measure}, {rule.space}, degree {rule.degree}{special}: {size}, {rule.digits} digits{found}"

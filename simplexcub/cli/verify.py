@@ -15,9 +15,11 @@ from simplexcub.measures import Measure
 from simplexcub.rule import Rule
 from simplexcub.table import read, save
 from simplexcub.table.formats import format_of
+from simplexcub.table.kind import kind_of
 from simplexcub.table.reading import read_bare
 from simplexcub.verify import verify
 from simplexcub.verify.check import Report
+from simplexcub.verify.embedded import check_embedded
 from simplexcub.verify.match import match
 from simplexcub.verify.mend import mend
 from simplexcub.verify.states import moduli_rule, read_states, reduced_rule
@@ -93,8 +95,10 @@ def _report(rule: Rule, measure: Measure | None) -> Report:
     facts = {
         "verified": "yes" if report.holds else "no",
         "measure": str(measure or rule.measure),
-        "claim": f"{claim}, space {rule.space}, {rule.digits} digits",
+        "claim": f"{claim}, space {rule.space}, {rule.digits} digits{kind_of(rule).told}",
         "exact": f"to degree {report.exact_degree}, {report.digits} digits; fails at degree {check.fails_at_degree}",
+        **_also(report),
+        **_embedded(rule, report.measure),
         "nodes": f"{len(rule)}, at least {check.lower_bound} needed, efficiency {check.lower_bound / len(rule):.2f}",
         "moments": f"{check.moments_checked} compared, largest residual {check.max_residual} at exponents {worst}",
         "weights": "all positive" if check.positive else "not all positive",
@@ -105,6 +109,19 @@ def _report(rule: Rule, measure: Measure | None) -> Report:
     for name, fact in facts.items():
         print(f"{name:<9} {fact}")
     return report
+
+
+def _also(report: Report) -> dict[str, str]:
+    told = [f"{c.name} off by {c.residual}" if c.residual else f"{c.name} not checked" for c in report.also]
+    return {"also": "; ".join(told)} if told else {}
+
+
+def _embedded(rule: Rule, measure: Measure) -> dict[str, str]:
+    if rule.embedded is None:
+        return {}
+    check = check_embedded(rule, measure)
+    means = f"{check.moments_checked} means compared, largest residual {check.max_residual}"
+    return {"embedded": f"second weights to degree {check.degree}, {means}"}
 
 
 def _proof(report: Report) -> dict[str, str]:

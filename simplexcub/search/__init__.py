@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 import datetime
-from collections.abc import Callable
+from collections.abc import Callable, Sequence
 from concurrent.futures import Executor
 from pathlib import Path
 
@@ -13,31 +13,31 @@ from mpmath import mp, mpf
 import simplexcub
 from simplexcub.errors import InputError, NothingFound
 from simplexcub.invariants import invariant_basis
-from simplexcub.measures import Chamber, Dirichlet, Measure, ordered
-from simplexcub.rule import Provenance, Rule, Space, rule_from_nodes, rule_from_orbits, rule_from_representatives
+from simplexcub.measures import Chamber, Measure, ordered
+from simplexcub.rounded import rule_from_nodes, rule_from_orbits, rule_from_representatives
+from simplexcub.rule import Provenance, Rule, Space
+from simplexcub.search.chebyshev import Chebyshev, chebyshev, chebyshev_rule
 from simplexcub.search.conical import MOST_NODES, conical_count, conical_rule
 from simplexcub.search.driver import Budget, Found, Progress, Search
+from simplexcub.search.embed import embed
+from simplexcub.search.extra import KnownMean
 from simplexcub.search.gauss import gauss_rule
 from simplexcub.search.levenberg import Overdue
 from simplexcub.search.patterns import PatternSearch
 from simplexcub.search.record import Record
 from simplexcub.search.spaces import folded, gauss_pairs, unfolded
-from simplexcub.search.system import FloatArray, Problem
+from simplexcub.search.symmetries import groups_for
+from simplexcub.search.system import FloatArray
+from simplexcub.search.wish import Wish, fixed_integers, make_wish, with_claims
 from simplexcub.search.workers import Workers, local_workers
-from simplexcub.symmetry import Group, Spectra, named_group, spectra
+from simplexcub.symmetry import Group, Spectra, spectra
 
-__all__ = ["Progress", "product_rule", "solve"]
+__all__ = ["Chebyshev", "KnownMean", "Progress", "chebyshev", "embed", "product_rule", "solve"]
 
 _SPACES = ("all", "symmetric", "ordered")
 _SPARE_DIGITS = 10  # of the chamber's coordinates, which are added up
-# Node counts measured over degrees 3 to 12: few symmetries first, since that is where the fewest nodes were found.
-_PROMISE = {
-    3: ("cyclic", "stabiliser", "none", "full"),
-    4: ("cyclic", "klein", "dihedral", "stabiliser", "none", "full"),
-}
 _PRODUCT_SHARE = 2  # products with up to so many nodes per equation are worth setting out from
 _NO_PROVENANCE = Provenance("", 0, "", "conical product")
-_PROMISE_ELSE = ("stabiliser", "none", "full")
 
 
 def solve(
@@ -46,6 +46,10 @@ def solve(
     *,
     space: Space = "all",
     symmetry: str = "full",
+    equal_weights: bool = False,
+    integer_weights: int = 0,
+    also: str | KnownMean | Sequence[str | KnownMean] = (),
+    include: str | Sequence[str] = (),
     digits: int = 50,
     seed: int = 0,
     budget: float = 60.0,
@@ -73,6 +77,15 @@ def solve(
         ``none``. Fewer symmetries often need fewer nodes. ``best`` tries several and keeps the fewest nodes. For a
         Dirichlet measure with unequal α, ``full`` means the permutations among components of equal α. Only space
         ``all`` has a choice.
+    equal_weights : bool
+        Every node has the weight 1/M. For N = 2 it is decided exactly which numbers of nodes up to degree + 1 serve.
+    integer_weights : int
+        Weights are integers up to this one, over their sum; 0 leaves them free.
+    also : str or sequence of str or KnownMean
+        Functions to average exactly besides the polynomials: ``entropy`` is Σ λ ln λ, ``entropy-K`` Σ λ^K ln λ,
+        ``power-Q`` Σ λ^Q, and a :class:`KnownMean` any symmetric function with a known mean.
+    include : {"vertices", "centre", "edge-midpoints"} or sequence of them
+        Nodes that the rule must have, for those who hold values there; their weights are free, but positive.
     digits : int
         Significant digits of nodes and weights, at least 5.
     seed : int
@@ -111,6 +124,10 @@ def solve(
     _check(degree=degree, space=space, digits=digits, seed=seed, budget=budget, jobs=jobs)
     if space != "all" and symmetry not in ("full", "best", *(("none",) if space == "ordered" else ())):
         raise InputError(f"symmetry must be full for rules of space {space}", symmetry, "Leave --symmetry out.")
+    wish = make_wish(measure, degree, symmetry, include, also, fixed_integers(equal_weights, integer_weights))
+    if space != "all" and not wish.plain:
+        remedy = "Ask for space all; its fully symmetric rules can be folded into ordered spectra."
+        raise InputError("space must be all where weights, nodes or more functions are asked for", space, remedy)
     if space == "ordered":
         chamber = Chamber(ordered(measure))
         rule = solve(
@@ -125,20 +142,30 @@ def solve(
             progress=progress,
         )
         return unfolded(rule, measure, digits)
-    groups: list[Group] = [spectra(measure.N)] if space == "symmetric" else _groups(measure, symmetry)
+    groups: list[Group] = [spectra(measure.N)] if space == "symmetric" else groups_for(measure, symmetry)
     if measure.N == 2 and space == "symmetric":
         return gauss_pairs(measure, degree, digits=digits, provenance=_provenance(seed, "Gauss"))
-    if measure.N == 2:
+    if jobs > 1 or executor is not None:
+        wish.check_portable()
+    reason = ""
+    if measure.N == 2 and equal_weights:
+        try:
+            return chebyshev_rule(measure, degree, digits=digits, provenance=_provenance(seed, ""))
+        except NothingFound as none:
+            reason = f"{none.tried}; "
+    if measure.N == 2 and wish.plain:
         return product_rule(measure, degree, digits=digits, seed=seed)
     record = None if resume is None else Record(resume)
     if executor is None:
         with local_workers(jobs, record) as workers:
-            found = _search(groups, measure, degree, digits, seed, budget, workers, progress)
+            found = _search(groups, wish, digits, seed, budget, workers, progress)
     else:
         workers = Workers(lambda: executor, jobs, record, owned=False)
-        found = _search(groups, measure, degree, digits, seed, budget, workers, progress)
+        found = _search(groups, wish, digits, seed, budget, workers, progress)
     if found is not None:
-        return _rule(found, digits, _provenance(seed, "orbit search"))
+        return _rule(found, digits, _provenance(seed, f"{wish.method}; {reason}".removesuffix("; ")))
+    if not wish.plain:
+        wish.give_up(budget, reason)
     product = product_rule(measure, degree, digits=digits, seed=seed)
     return folded(product) if space == "symmetric" else product
 
@@ -172,8 +199,7 @@ def _provenance(seed: int, method: str) -> Provenance:
 
 def _search(
     groups: list[Group],
-    measure: Measure,
-    degree: int,
+    wish: Wish,
     digits: int,
     seed: int,
     budget: float,
@@ -188,14 +214,14 @@ def _search(
         most = MOST_NODES if best is None else best.nodes - 1
         kind = PatternSearch if isinstance(group, Spectra) else Search
         search = kind(
-            Problem(measure, degree, group),
+            wish.problem(group),
             digits=digits,
             seed=seed,
             budget=share,
             workers=workers,
             most_nodes=most,
             progress=progress,
-            known=_known(measure, degree, group, best),
+            known=_known(wish.measure, wish.degree, group, best) if wish.plain else (),
         )
         workers.deadline = share.start + share.seconds
         try:
@@ -232,9 +258,10 @@ def _rule(found: Found, digits: int, provenance: Provenance) -> Rule:
         return rule_from_representatives(problem.measure, problem.degree, orbits, digits=digits, provenance=provenance)
     if problem.group.is_full:
         orbits = [(t.multiplicities, values, weight) for t, values, weight in found.orbits]
-        return rule_from_orbits(problem.measure, problem.degree, orbits, digits=digits, provenance=provenance)
+        rule = rule_from_orbits(problem.measure, problem.degree, orbits, digits=digits, provenance=provenance)
+        return with_claims(rule, found)
     nodes, weights = _written_out(found, digits)
-    return rule_from_nodes(
+    rule = rule_from_nodes(
         problem.measure,
         problem.degree,
         nodes,
@@ -243,6 +270,7 @@ def _rule(found: Found, digits: int, provenance: Provenance) -> Rule:
         provenance=provenance,
         symmetry=problem.group.name,
     )
+    return with_claims(rule, found)
 
 
 def _written_out(found: Found, digits: int) -> tuple[list[list[mpf]], list[mpf]]:
@@ -254,24 +282,6 @@ def _written_out(found: Found, digits: int) -> tuple[list[list[mpf]], list[mpf]]
                 nodes.append([values[label] for label in pattern])
                 weights.append(weight / type_.size)
     return nodes, weights
-
-
-def _groups(measure: Measure, symmetry: str) -> list[Group]:
-    """The groups to search with, each checked to leave the measure unchanged."""
-    # A measure that is neither symmetric nor Dirichlet may have no symmetry at all: every component is told apart.
-    labels: tuple[object, ...] = (0,) * measure.N
-    if not measure.is_symmetric:
-        labels = measure.alpha if isinstance(measure, Dirichlet) else tuple(range(measure.N))
-    own = "full" if measure.is_symmetric else "alpha" if isinstance(measure, Dirichlet) else "none"
-    if symmetry == "best":
-        names = _PROMISE.get(measure.N, _PROMISE_ELSE) if measure.is_symmetric else dict.fromkeys((own, "none"))
-        return [named_group(name, measure.N, labels) for name in names]
-    group = named_group(own if symmetry == "full" else symmetry, measure.N, labels)
-    if any(labels[i] != labels[j] for g in group.generators for i, j in enumerate(g)):
-        raise InputError(
-            f"symmetry must leave {measure} unchanged", symmetry, "Use full (components of equal alpha) or none."
-        )
-    return [group]
 
 
 def _check(*, degree: int, space: str, digits: int, seed: int, budget: float, jobs: int) -> None:

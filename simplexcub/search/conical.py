@@ -15,7 +15,8 @@ from mpmath import mp, mpf
 
 from simplexcub.errors import NothingFound
 from simplexcub.measures import Measure
-from simplexcub.rule import Provenance, Rule, rule_from_nodes
+from simplexcub.rounded import rule_from_nodes
+from simplexcub.rule import Provenance, Rule
 from simplexcub.search.gauss import beta_gauss
 
 MOST_NODES = 50_000

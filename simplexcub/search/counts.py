@@ -14,8 +14,10 @@ from math import comb
 
 import numpy as np
 
-from simplexcub.invariants import invariant_basis
 from simplexcub.moments.partitions import count_partitions
+from simplexcub.search.chosen import Chosen, stratum
+from simplexcub.search.extended import invariant_extension
+from simplexcub.search.extra import Extra
 from simplexcub.symmetry import Group, OrbitType, Spectra
 
 Counts = tuple[tuple[OrbitType, int], ...]  # (orbit type, how many orbits), types with none left out
@@ -39,12 +41,12 @@ def random_values(type_: OrbitType, points: np.ndarray) -> np.ndarray:
 
 
 @lru_cache(maxsize=256)
-def conditions(group: Group, degree: int) -> list[Condition]:
+def conditions(group: Group, degree: int, also: tuple[Extra, ...] = ()) -> list[Condition]:
     """(types, need): the orbits of these types together must have at least `need` unknowns."""
     types = group.types
     if isinstance(group, Spectra):
         return [(frozenset(types), count_partitions(degree, group.n))]
-    basis = invariant_basis(group, degree)
+    basis = invariant_extension(group, degree, also)
     rng = np.random.default_rng(0)
     spans = {}
     for t in types:
@@ -63,22 +65,39 @@ def conditions(group: Group, degree: int) -> list[Condition]:
 
 def allowed(counts: Counts, wanted: list[Condition]) -> bool:
     """Whether a count vector meets every condition."""
-    return all(sum(c * t.unknowns for t, c in counts if t in s) >= need for s, need in wanted)
+    return all(sum(c * t.unknowns for t, c in counts if stratum(t) in s) >= need for s, need in wanted)
 
 
-def possible_counts(group: Group, degree: int, nodes: int) -> list[Counts]:
+def possible_counts(
+    group: Group,
+    degree: int,
+    nodes: int,
+    chosen: tuple[Chosen, ...] = (),
+    *,
+    fixed_weights: bool = False,
+    also: tuple[Extra, ...] = (),
+) -> list[Counts]:
     """Count vectors of exactly `nodes` nodes that pass every condition, those with most freedom first.
 
-    Freedom is the least excess of unknowns over any condition. At most ``_MOST_STRUCTURES`` are listed.
+    Freedom is the least excess of unknowns over any condition. At most ``_MOST_STRUCTURES`` are listed. The `chosen`
+    orbits are part of all of them. Fixed weights are no unknowns, but sum to 1 by themselves.
     """
-    wanted = conditions(group, degree)
+    unknowns = {t: t.unknowns - fixed_weights for t in group.types}
+    given = tuple((t, 1) for t in chosen)
+    nodes -= node_count(given)
+    if nodes < 0:
+        return []
+    wanted = [(s, need - sum(stratum(t) in s for t in chosen)) for s, need in conditions(group, degree, also)]
+    if fixed_weights:
+        wanted = [(s, need - (len(s) == len(group.types))) for s, need in wanted]
+    taken = {stratum(t) for t in chosen if stratum(t).unknowns == 1}  # a stratum of one point, which is chosen
     types = list(reversed(group.types))
     masks = [[t in s for t in types] for s, _ in wanted]
     # The most unknowns that one node can bring to a condition, among the types from position i on.
     rates = [[0.0] for _ in masks]
     for t, flags in zip(types[::-1], zip(*(mask[::-1] for mask in masks), strict=True), strict=True):
         for rate, counts_here in zip(rates, flags, strict=True):
-            rate.insert(0, max(rate[0], counts_here * t.unknowns / t.size))
+            rate.insert(0, max(rate[0], counts_here * unknowns[t] / t.size))
 
     def extend(i: int, left: int, lacks: tuple[int, ...]) -> Iterator[tuple[int, ...]]:
         if any(lack > rate[i] * left + 1e-9 for lack, rate in zip(lacks, rates, strict=True)):
@@ -90,9 +109,9 @@ def possible_counts(group: Group, degree: int, nodes: int) -> list[Counts]:
         t = types[i]
         most = left // t.size
         if t.unknowns == 1:
-            most = min(most, 1)  # a stratum of one point
+            most = min(most, 0 if t in taken else 1)  # a stratum of one point
         for c in range(most, -1, -1):
-            rest = tuple(lack - c * t.unknowns * mask[i] for lack, mask in zip(lacks, masks, strict=True))
+            rest = tuple(lack - c * unknowns[t] * mask[i] for lack, mask in zip(lacks, masks, strict=True))
             for tail in extend(i + 1, left - c * t.size, rest):
                 yield (c, *tail)
 
@@ -100,9 +119,9 @@ def possible_counts(group: Group, degree: int, nodes: int) -> list[Counts]:
     found = [tuple((t, c) for t, c in zip(group.types, reversed(cs), strict=True) if c) for cs in listed]
 
     def freedom(counts: Counts) -> int:
-        return min(sum(c * t.unknowns for t, c in counts if t in s) - need for s, need in wanted)
+        return min(sum(c * unknowns[t] for t, c in counts if t in s) - need for s, need in wanted)
 
-    return sorted(found, key=lambda cs: (-freedom(cs), sum(c * t.unknowns for t, c in cs)))
+    return [cs + given for cs in sorted(found, key=lambda cs: (-freedom(cs), sum(c * t.unknowns for t, c in cs)))]
 
 
 def fewest_nodes(group: Group, degree: int) -> int:

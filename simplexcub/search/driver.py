@@ -27,6 +27,7 @@ WALKS = (4, 12, 48)  # elimination walks begun in each round
 CHUNKS = (1, 2, 8)  # chunks of starts that every structure gets in each round
 STRUCTURES = (6, 20, 2000)  # structures of one node count that are tried in each round
 AGREE = (4, 6, 10**9)  # walks that must have ended at the best count for a round to be the last
+FAILURES = 6  # node counts in a row without a rule of fixed weights that end the way down
 ABREAST = 4  # walks that go on side by side
 
 
@@ -112,10 +113,12 @@ class Search:
     def run(self) -> None:
         """Search until the rounds or the budget end."""
         walks, chunks = 0, 0
+        if self.problem.integers:
+            self._bracket()
         for nodes, weights in self.known:
             self._walk([0], set_out_from(self.problem, nodes, weights))
         for more_walks, more_chunks, structures, agree in zip(WALKS, CHUNKS, STRUCTURES, AGREE, strict=True):
-            for first in range(walks, walks + more_walks, ABREAST):
+            for first in range(walks, walks + (0 if self.problem.integers else more_walks), ABREAST):
                 self._walk(range(first, first + ABREAST))
             self._start(range(chunks, chunks + more_chunks), structures)
             walks, chunks = walks + more_walks, chunks + more_chunks
@@ -165,17 +168,46 @@ class Search:
                 self._agreed += walk.ended and self.best is not None and node_count(walk.counts) == self.best.nodes
             leg += 1
 
+    def _bracket(self) -> None:
+        """Instead of walks, where weights are fixed: up in growing steps to a first rule, then down by single nodes."""
+        least = nodes = fewest_nodes(self.problem.group, self.problem.degree)
+        while self.best is None and nodes <= self._most() and not self.budget.spent:
+            nodes += max(1, nodes // 8) if self._try(nodes) else 1
+        failures = 0
+        while self.best is not None and failures < FAILURES and not self.budget.spent:
+            before = self.best
+            nodes = min(nodes, before.nodes) - 1
+            if nodes < least:
+                return
+            failures += self._try(nodes) and self.best is before
+
+    def _try(self, nodes: int) -> bool:
+        """One chunk of starts for a few structures of a node count; whether there are any."""
+        structures = self._structures(nodes)[: STRUCTURES[0]]
+        tasks = (Chunk(self.problem, counts, self.seed, 0) for counts in structures)
+        for task, solutions in self.workers.in_order(takewhile(lambda _: not self.budget.spent, tasks)):
+            self._report(f"starts for {describe(task.counts)}")
+            if self._take(task.counts, solutions):
+                break
+        return bool(structures)
+
     def _start(self, numbers: Sequence[int], most_structures: int) -> None:
         """Random starts for the structures below the best, from the fewest nodes upward until one is solved."""
         for nodes in range(fewest_nodes(self.problem.group, self.problem.degree), self._most() + 1):
             if self.budget.spent:
                 return
-            structures = possible_counts(self.problem.group, self.problem.degree, nodes)[:most_structures]
+            structures = self._structures(nodes)[:most_structures]
             tasks = (Chunk(self.problem, counts, self.seed, number) for counts in structures for number in numbers)
             for task, solutions in self.workers.in_order(takewhile(lambda _: not self.budget.spent, tasks)):
                 self._report(f"starts for {describe(task.counts)}")
                 if self._take(task.counts, solutions) or self.budget.spent:
                     return
+
+    def _structures(self, nodes: int) -> list[Counts]:
+        problem, fixed = self.problem, self.problem.integers > 0
+        return possible_counts(
+            problem.group, problem.degree, nodes, problem.chosen, fixed_weights=fixed, also=problem.also
+        )
 
     def _take(self, counts: Counts, solutions: FloatArray) -> bool:
         """Keep the first of the solutions that can be refined to all digits."""

@@ -16,6 +16,7 @@ from functools import lru_cache
 import numpy as np
 from scipy.optimize import nnls
 
+from simplexcub.search.chosen import Chosen
 from simplexcub.search.counts import Counts, allowed, conditions, node_count, random_values
 from simplexcub.search.levenberg import solve_batch
 from simplexcub.search.system import FloatArray, Parts, Problem, System
@@ -27,18 +28,22 @@ _BATCH = 8  # candidates tried at once, those with the least to lose first
 _ITERATIONS = 50
 _RICHNESS = (5, 20, 80)  # candidates per equation and orbit type offered to the start, more where fewer do not do
 _SOLVED, _NO_WEIGHT = 1e-8, 1e-14
+_LEAST = 1e-3  # weight of a chosen orbit in the start
 
 
 def tchakaloff_start(problem: Problem, rng: np.random.Generator) -> tuple[Counts, FloatArray] | None:
     """A positive rule with at most as many orbits as equations, picked from many random orbits of every type."""
     system = System(problem, ())
-    basis, group = problem.basis, problem.group
+    basis = problem.basis
     for richness in _RICHNESS:
         parts: Parts = {}
-        points = {t: richness * len(basis) if t.unknowns > 1 else 1 for t in group.types}
-        values = {t: random_values(t, rng.dirichlet(np.ones(group.n), m)) for t, m in points.items()}
+        points = {t: richness * len(basis) if t.unknowns > 1 else 1 for t in problem.types}
+        values = {t: _candidates(t, rng, m) for t, m in points.items()}
         columns = np.concatenate([basis.jet(v, t)[:, 0] for t, v in values.items()]).T
-        weights, residual = nnls(columns, system.means, maxiter=20 * columns.shape[1])
+        # A chosen orbit has at least a small weight, whatever the least squares make of the rest.
+        least = np.concatenate([np.full(len(v), _LEAST * isinstance(t, Chosen)) for t, v in values.items()])
+        weights, residual = nnls(columns, system.means - columns @ least, maxiter=20 * columns.shape[1])
+        weights = weights + least
         if residual > _SOLVED:
             continue
         start = 0
@@ -48,6 +53,13 @@ def tchakaloff_start(problem: Problem, rng: np.random.Generator) -> tuple[Counts
             start += len(v)
         return system.join(parts)
     return None
+
+
+def _candidates(type_: OrbitType, rng: np.random.Generator, count: int) -> FloatArray:
+    """Distinct coordinates of orbits offered to the start: random ones, or the given ones of a chosen orbit."""
+    if isinstance(type_, Chosen):
+        return np.array([[float(x) for x in type_.coordinates]])
+    return random_values(type_, rng.dirichlet(np.ones(len(type_.pattern)), count))
 
 
 @dataclass(frozen=True)
@@ -108,16 +120,17 @@ def advance(problem: Problem, walk: Walk, rng: np.random.Generator) -> Walk:
 def _drop(problem: Problem, walk: Walk) -> tuple[Counts, FloatArray] | None:
     """Solutions with `walk.at_once` orbits fewer, or with one orbit moved to a smaller type; None if there are none."""
     system = System(problem, walk.counts)
-    wanted = conditions(problem.group, problem.degree)
+    wanted = conditions(problem.group, problem.degree, problem.also)
     children: dict[Counts, list[tuple[float, FloatArray]]] = {}
     for u in walk.pool:
         significance = _significance(system, u)
         order = np.argsort(significance)
         if walk.at_once > 1:
-            dropped = order[: walk.at_once]
+            dropped = order[: min(walk.at_once, int(np.isfinite(significance).sum()))]
             options = [(float(significance[dropped].sum()), *_without(system, u, dropped))]
         else:
-            options = [(float(significance[r]), *_without(system, u, np.array([r]))) for r in order]
+            kept = (r for r in order if np.isfinite(significance[r]))
+            options = [(float(significance[r]), *_without(system, u, np.array([r]))) for r in kept]
             options += list(_demoted(system, u))
         for loss, smaller, v in options:
             if smaller and allowed(smaller, wanted):
@@ -139,8 +152,8 @@ def _demoted(system: System, u: FloatArray) -> Iterator[tuple[float, Counts, Flo
     group = system.problem.group
     parts = system.split(u)
     for type_, orbits in parts.items():
-        for special in group.types:
-            if special.unknowns != type_.unknowns - 1:
+        for special in system.problem.types:
+            if isinstance(special, Chosen) or special.unknowns != type_.unknowns - 1:
                 continue
             for pattern in _merging(group, special, type_):
                 for i, (weight, values) in enumerate(orbits):
@@ -164,9 +177,12 @@ def _merging(group: Group, special: OrbitType, type_: OrbitType) -> list[tuple[i
 
 
 def _significance(system: System, u: FloatArray) -> FloatArray:
-    """How much each orbit carries: weight · ‖φ(representative)‖², smallest where it is least missed."""
+    """How much each orbit carries: weight · ‖φ(representative)‖², without limit for a chosen one."""
     norms = [np.square(system.basis.jet(system.values(u[None], b)[0], b.type)[:, 0]).sum(axis=1) for b in system.blocks]
     carried: FloatArray = u[: system.orbits] * np.concatenate(norms)
+    for block in system.blocks:
+        if isinstance(block.type, Chosen):
+            carried[block.weights] = np.inf
     return carried
 
 

@@ -18,7 +18,8 @@ from mpmath import mp, mpf
 
 from simplexcub.errors import InputError
 from simplexcub.measures import Dirichlet, Measure
-from simplexcub.rule import Provenance, Rule, rule_from_nodes, rule_from_orbits
+from simplexcub.rounded import rule_from_nodes, rule_from_orbits
+from simplexcub.rule import Provenance, Rule
 
 
 def recurrence(moment: Callable[[int], Fraction], n: int) -> tuple[list[Fraction], list[Fraction]]:

@@ -117,7 +117,8 @@ def _damped_step(residual: FloatArray, jacobian: FloatArray, damping: FloatArray
     normal = jacobian @ transposed if wide else transposed @ jacobian
     side = residual[:, :, None] if wide else transposed @ residual[:, :, None]
     diagonal = np.arange(normal.shape[1])
-    floor = 1e-14 * np.einsum("bnn->b", normal)  # keeps the system regular where a weight or orbit dies out
+    # Keeps the system regular where a weight or orbit dies out, or nothing can move.
+    floor = 1e-14 * np.einsum("bnn->b", normal) + 1e-30
     normal[:, diagonal, diagonal] += (damping + floor)[:, None]
     solved = -np.linalg.solve(normal, side)
     step = transposed @ solved if wide else solved

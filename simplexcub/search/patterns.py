@@ -63,12 +63,12 @@ class PatternSearch(Search):
         equations = len(self.problem.basis)
         nodes = least
         while nodes <= min(self._most(), equations) and not self.budget.spent:
-            if self._try(nodes, first, last):
+            if self._try_turns(nodes, first, last):
                 return
             far = self.best is None and nodes >= least + STEPS
             nodes += max(1, nodes // 8) if far else 1
 
-    def _try(self, nodes: int, first: int, last: int) -> bool:
+    def _try_turns(self, nodes: int, first: int, last: int) -> bool:
         """Try the structures of these turns; whether one was solved."""
         tasks = (
             Chunk(self.problem, counts, self.seed, number)

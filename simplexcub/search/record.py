@@ -9,16 +9,18 @@ from __future__ import annotations
 import os
 import tempfile
 import zipfile
+from collections.abc import Sequence
 from pathlib import Path
 
 import numpy as np
 
 from simplexcub.errors import InputError
+from simplexcub.search.chosen import Chosen
 from simplexcub.search.counts import Counts
 from simplexcub.search.eliminate import Walk
 from simplexcub.search.system import FloatArray
 from simplexcub.search.tasks import Chunk, Leg
-from simplexcub.symmetry import Group
+from simplexcub.symmetry import OrbitType
 
 
 class Record:
@@ -53,7 +55,7 @@ class Record:
                 pool: FloatArray = data["pool"]
                 if isinstance(task, Chunk):
                     return pool
-                counts = _counts(task.problem.group, data["patterns"], data["numbers"])
+                counts = _counts(task.problem.types, data["patterns"], data["numbers"])
                 at_once, shaken, ended = (int(v) for v in data["state"])
                 return Walk(counts, pool, at_once, shaken, bool(ended))
         except (OSError, ValueError, TypeError, KeyError, EOFError, zipfile.BadZipFile):
@@ -66,7 +68,7 @@ class Record:
         if isinstance(result, Walk):
             arrays = {
                 "pool": result.pool,
-                "patterns": np.array([t.pattern for t, _ in result.counts], dtype=np.int64),
+                "patterns": np.array([_label(t) for t, _ in result.counts], dtype=np.int64),
                 "numbers": np.array([c for _, c in result.counts], dtype=np.int64),
                 "state": np.array([result.at_once, result.shaken, result.ended], dtype=np.int64),
             }
@@ -84,6 +86,11 @@ class Record:
             raise
 
 
-def _counts(group: Group, patterns: np.ndarray, numbers: np.ndarray) -> Counts:
-    types = {t.pattern: t for t in group.types}
+def _label(type_: OrbitType) -> tuple[int, ...]:
+    """The pattern, with labels below zero where the orbit is chosen."""
+    return tuple(-1 - label for label in type_.pattern) if isinstance(type_, Chosen) else type_.pattern
+
+
+def _counts(known: Sequence[OrbitType], patterns: np.ndarray, numbers: np.ndarray) -> Counts:
+    types = {_label(t): t for t in known}
     return tuple((types[tuple(int(i) for i in p)], int(c)) for p, c in zip(patterns, numbers, strict=True))

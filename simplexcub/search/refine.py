@@ -12,6 +12,7 @@ import numpy as np
 from mpmath import mp, mpf
 from numpy.typing import NDArray
 
+from simplexcub.search.chosen import Chosen
 from simplexcub.search.system import Block, System
 from simplexcub.symmetry import OrbitType
 
@@ -33,6 +34,12 @@ def refine(system: System, u: NDArray[np.float64], digits: int) -> Orbits | None
     inverse = np.linalg.pinv(system.evaluate(u[None])[1][0], rcond=_SINGULAR)
     means = system.basis.means_fixed(system.problem.measure, bits)
     exact = np.array([int(math.ldexp(x, 60)) << (bits - 60) for x in u], dtype=object)
+    if system.problem.integers:
+        inverse[: system.orbits] = 0.0  # fixed, but for what the pseudo-inverse makes of their zero columns
+        integers = system.integer_weights(u)
+        sizes = [block.type.size for block in system.blocks for _ in range(block.count)]
+        total = sum(k * size for k, size in zip(integers, sizes, strict=True))
+        exact[: system.orbits] = [(k * size << bits) // total for k, size in zip(integers, sizes, strict=True)]
     goal = 1 << (bits - math.ceil((digits + 6) * math.log2(10)))
     last = None
     for _ in range(_MOST_PASSES):
@@ -54,6 +61,9 @@ def refine(system: System, u: NDArray[np.float64], digits: int) -> Orbits | None
 
 def _values_fixed(exact: IntArray, block: Block, bits: int) -> IntArray:
     """Distinct coordinates of the block's orbits, the last from the sum; shape (count, k)."""
+    if isinstance(block.type, Chosen):
+        row = [(x.numerator << bits) // x.denominator for x in block.type.coordinates]
+        return np.array([row] * block.count, dtype=object)
     free = exact[block.coordinates].reshape(block.count, block.free)
     last = np.full(block.count, 1 << bits, dtype=object)
     for j, m in enumerate(block.type.multiplicities[:-1]):

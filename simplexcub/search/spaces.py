@@ -10,7 +10,8 @@ from mpmath import mp, mpf
 
 from simplexcub.measures import Measure
 from simplexcub.measures.chamber import spectrum
-from simplexcub.rule import Provenance, Rule, rule_from_nodes, rule_from_representatives
+from simplexcub.rounded import rule_from_nodes, rule_from_representatives
+from simplexcub.rule import Provenance, Rule
 from simplexcub.search.gauss import gauss_nodes, recurrence
 
 Orbit = tuple[tuple[int, ...], list[mpf], mpf]

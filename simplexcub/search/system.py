@@ -6,14 +6,19 @@ per basis function: Σ_orbits weight · φ_i(representative) = E[φ_i].
 
 from __future__ import annotations
 
+import math
 from dataclasses import dataclass
+from fractions import Fraction
 
 import numpy as np
 from numpy.typing import NDArray
 
-from simplexcub.invariants import Basis, basis_for, mean_vector
+from simplexcub.invariants import Basis
 from simplexcub.measures import Measure
+from simplexcub.search.chosen import Chosen
 from simplexcub.search.counts import Counts, random_values
+from simplexcub.search.extended import extended_basis, extended_means
+from simplexcub.search.extra import Extra
 from simplexcub.symmetry import Group, OrbitType, Spectra
 
 FloatArray = NDArray[np.float64]
@@ -22,15 +27,36 @@ Parts = dict[OrbitType, list[tuple[float, FloatArray]]]  # orbits of one candida
 
 @dataclass(frozen=True)
 class Problem:
-    """What is searched for: a measure, a degree and the symmetry of the node set."""
+    """What is searched for.
+
+    Attributes
+    ----------
+    measure, degree, group
+        The measure, the degree and the symmetry of the node set.
+    chosen : tuple of Chosen
+        Orbits that the rule must have.
+    integers : int
+        Weights are integers up to this one over their sum, fixed before the search; 1 makes them equal, 0 free.
+    also : tuple of Extra
+        Functions to average exactly besides the polynomials.
+    """
 
     measure: Measure
     degree: int
     group: Group
+    chosen: tuple[Chosen, ...] = ()
+    integers: int = 0
+    also: tuple[Extra, ...] = ()
+
+    @property
+    def types(self) -> list[OrbitType]:
+        """Orbit types of the group, without single points that are chosen, and the chosen orbits."""
+        points = {t.stratum for t in self.chosen if t.stratum.unknowns == 1}
+        return [*(t for t in self.group.types if t not in points), *self.chosen]
 
     @property
     def basis(self) -> Basis:
-        return basis_for(self.group, self.degree, self.measure)
+        return extended_basis(self.group, self.degree, self.also, self.measure)
 
 
 @dataclass(frozen=True)
@@ -54,7 +80,7 @@ class System:
         self.problem = problem
         self.counts = counts
         self.basis = problem.basis
-        self.means = mean_vector(problem.group, problem.degree, problem.measure)
+        self.means = extended_means(problem.group, problem.degree, problem.also, problem.measure)
         self.blocks: list[Block] = []
         orbits = sum(c for _, c in counts)
         w, x = 0, orbits
@@ -71,7 +97,7 @@ class System:
         rows, offsets = [np.eye(self.size)], [np.zeros(self.size)]
         for block in self.blocks:
             m = np.array(block.type.multiplicities, dtype=float)
-            for i in range(block.count):
+            for i in range(0 if isinstance(block.type, Chosen) else block.count):
                 row = np.zeros(self.size)
                 start = block.coordinates.start + i * block.free
                 row[start : start + block.free] = -m[:-1] / m[-1]
@@ -81,6 +107,9 @@ class System:
 
     def values(self, u: FloatArray, block: Block) -> FloatArray:
         """Distinct coordinates of the block's orbits; shape (B, count, k)."""
+        if isinstance(block.type, Chosen):
+            given = np.array([float(x) for x in block.type.coordinates])
+            return np.broadcast_to(given, (len(u), block.count, len(given)))
         free = u[:, block.coordinates].reshape(len(u), block.count, block.free)
         m = np.array(block.type.multiplicities, dtype=float)
         last = (1.0 - free @ m[:-1]) / m[-1]
@@ -92,22 +121,31 @@ class System:
         residual = np.broadcast_to(-self.means, (batch, count)).copy()
         jacobian = np.empty((batch, self.size, count))
         for block in self.blocks:
-            k = block.type.unknowns
+            k = len(block.type.multiplicities)
             jet = self.basis.jet(self.values(u, block).reshape(-1, k), block.type)
             jet = jet.reshape(batch, block.count, k, count)
             weights = u[:, block.weights]
             jacobian[:, block.weights] = jet[:, :, 0]
-            jacobian[:, block.coordinates] = (weights[:, :, None, None] * jet[:, :, 1:]).reshape(batch, -1, count)
+            slopes = weights[:, :, None, None] * jet[:, :, 1 : 1 + block.free]
+            jacobian[:, block.coordinates] = slopes.reshape(batch, block.count * block.free, count)
             residual += np.einsum("br,bre->be", weights, jet[:, :, 0])
+        if self.problem.integers:
+            jacobian[:, : self.orbits] = 0.0
         return residual, jacobian.transpose(0, 2, 1)
 
     def starts(self, rng: np.random.Generator, batch: int) -> FloatArray:
         """Random candidates inside the simplex, weights in proportion to orbit size but for noise."""
         u = np.empty((batch, self.size))
         for block in self.blocks:
+            if isinstance(block.type, Chosen):
+                u[:, block.weights] = block.type.size * rng.uniform(0.1, 1.5, (batch, block.count))
+                continue
             points = self._points(rng, batch * block.count).reshape(batch, block.count, -1)
             u[:, block.coordinates] = random_values(block.type, points)[..., :-1].reshape(batch, -1)
             u[:, block.weights] = block.type.size * rng.uniform(0.5, 1.5, (batch, block.count))
+            if self.problem.integers:
+                shares = rng.integers(1, self.problem.integers + 1, (batch, block.count))
+                u[:, block.weights] = block.type.size * shares
         u[:, : self.orbits] /= u[:, : self.orbits].sum(axis=1, keepdims=True)
         return u
 
@@ -116,6 +154,14 @@ class System:
         if isinstance(self.problem.group, Spectra):
             return np.sort(self.problem.measure.sample(rng, count), axis=1)
         return rng.dirichlet(np.ones(self.problem.group.n), count)
+
+    def integer_weights(self, u: FloatArray) -> list[int]:
+        """Of one candidate with fixed weights, the integers that the weights of its nodes are in proportion to."""
+        sizes = np.concatenate([np.full(block.count, block.type.size) for block in self.blocks])
+        shares = u[: self.orbits] / sizes
+        ratios = [Fraction(x).limit_denominator(self.problem.integers) for x in (shares / shares.min()).tolist()]
+        scale = math.lcm(*(r.denominator for r in ratios))
+        return [int(r * scale) for r in ratios]
 
     def slack(self, u: FloatArray) -> FloatArray:
         """Distances of weights and coordinates from zero; shape (B, constraints)."""
@@ -128,6 +174,8 @@ class System:
         # Spectra of many components hardly fluctuate, so no coordinate moves by more than a share of itself.
         stretch = 1.0 if isinstance(self.problem.group, Spectra) else float(self.problem.group.n)
         for block in self.blocks:
+            if not block.free:
+                continue
             values = self.values(u, block)
             room = np.minimum(values[..., :-1], values[..., -1:])
             out[:, block.coordinates] = room.reshape(len(u), -1) * stretch
@@ -142,12 +190,12 @@ class System:
 
     def join(self, parts: Parts) -> tuple[Counts, FloatArray]:
         """The structure and the unknowns of a candidate given by its orbits; weights are scaled to sum to 1."""
-        kept = [(t, _united(t, parts[t])) for t in self.problem.group.types if parts.get(t)]
+        kept = [(t, _united(t, parts[t])) for t in self.problem.types if parts.get(t)]
         counts = tuple((t, len(orbits)) for t, orbits in kept)
         if not kept:
             return (), np.empty(0)
         weights = np.array([w for _, orbits in kept for w, _ in orbits])
-        coordinates = [values[:-1] for _, orbits in kept for _, values in orbits]
+        coordinates = [values[: t.unknowns - 1] for t, orbits in kept for _, values in orbits]
         return counts, np.concatenate([weights / weights.sum(), *coordinates])
 
 

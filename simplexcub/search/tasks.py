@@ -90,7 +90,15 @@ def describe(counts: Counts) -> str:
 
 
 def _digest(problem: Problem, *rest: object) -> str:
-    label = repr((sorted(problem.measure.parameters().items()), problem.degree, problem.group.name, rest))
+    chosen = [t.coordinates for t in problem.chosen]
+    asked = (
+        problem.degree,
+        problem.group.name,
+        *([chosen] if chosen else []),
+        *([problem.integers] if problem.integers else []),
+    )
+    asked += tuple(f"{extra.label.name} {'' if extra.user is None else extra.user.mean}" for extra in problem.also)
+    label = repr((sorted(problem.measure.parameters().items()), *asked, rest))
     return hashlib.sha256(label.encode()).hexdigest()
 
 

@@ -15,12 +15,13 @@ from simplexcub.table.record import from_record, orbit_record, to_record, verifi
 
 MARK = "# format: simplexcub-rule 1"
 _JSON = ("measure", "degree", "equal_weights", "digits", "verification", "provenance")
+_OPTIONAL = ("also", "integer_weights")
 _PLAIN = ("space", "symmetry")
 _SPOKEN = ("status", "density", "lower bound")
 
 
 def export(rule: Rule) -> str:
-    """The rule as CSV: header lines, a row of column names, then N coordinates and the weight of each node."""
+    """The rule as CSV: header lines, a row of column names, then coordinates and weight (or both) of each node."""
     record = to_record(rule)
     spoken = {fact.label: fact.text for fact in facts(rule)}
     lines = [
@@ -29,6 +30,8 @@ def export(rule: Rule) -> str:
         f"# measure: {_dump(record['measure'])}",
         *(f"# {key}: {record[key]}" for key in _PLAIN),
         *(f"# {key}: {_dump(record[key])}" for key in ("degree", "equal_weights", "digits")),
+        *(f"# {key}: {_dump(record[key])}" for key in _OPTIONAL if key in record),
+        *([f"# embedded degree: {rule.embedded.degree}"] if rule.embedded else []),
         f"# nodes: {len(rule)}",
         f"# verification: {_dump(verification_record(rule))}",
         f"# provenance: {_dump(record['provenance'])}",
@@ -36,8 +39,13 @@ def export(rule: Rule) -> str:
     ]
     body = io.StringIO()
     writer = csv.writer(body, lineterminator="\n")
-    writer.writerow([*(f"lambda_{i}" for i in range(1, rule.measure.N + 1)), "weight"])
-    writer.writerows((*node, weight) for node, weight in zip(rule.node_decimals, rule.weight_decimals, strict=True))
+    columns = [*zip(*rule.node_decimals, strict=True), rule.weight_decimals]
+    names = [*(f"lambda_{i}" for i in range(1, rule.measure.N + 1)), "weight"]
+    if rule.embedded:
+        columns.append(rule.embedded.weight_decimals)
+        names.append("embedded_weight")
+    writer.writerow(names)
+    writer.writerows(zip(*columns, strict=True))
     return "\n".join(lines) + "\n" + body.getvalue()
 
 
@@ -51,6 +59,7 @@ def parse(text: str, where: str) -> Rule:
     """
     record: dict[str, Any] = {"orbits": []}
     count: int | None = None
+    second: int | None = None
     rows: list[list[str]] = []
     for number, line in enumerate(text.split("\n")[1:], 2):
         place = f"{where}, line {number}"
@@ -66,7 +75,9 @@ def parse(text: str, where: str) -> Rule:
                 count = _load(value, f"{place}: nodes")
             elif key == "orbit":
                 record["orbits"].append(_load(value, f"{place}: orbit"))
-            elif key in _JSON:
+            elif key == "embedded degree":
+                second = _load(value, f"{place}: embedded degree")
+            elif key in (*_JSON, *_OPTIONAL):
                 record[key] = _load(value, f"{place}: {key}")
             else:
                 raise TableError(f"{place}: the header must hold known keys only", repr(key))
@@ -78,6 +89,8 @@ def parse(text: str, where: str) -> Rule:
     if count != len(rows):
         rule = f"{where}: there must be as many rows as the header says, {count}"
         raise TableError(rule, len(rows), "The file may be cut short; take an unchanged copy.")
+    if second is not None:
+        record["embedded"] = {"degree": second, "weights": [row.pop() for row in rows]}
     record["nodes"] = [row[:-1] for row in rows]
     record["weights"] = [row[-1] for row in rows]
     return from_record(record, where)

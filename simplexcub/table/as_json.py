@@ -22,7 +22,8 @@ def export(rule: Rule) -> str:
     record = {"format": FORMAT, "version": VERSION, **to_record(rule)}
     record["sha256"] = checksum(record)
     order = ("measure", "space", "degree", "symmetry", "equal_weights", "digits", "verification", "provenance")
-    keys = ("format", "version", *order, "orbits", "nodes", "weights", "sha256")
+    last = ("integer_weights", "embedded", "orbits", "nodes", "weights", "sha256")
+    keys = ("format", "version", *order, "also", *last)
     lines = [f" {json.dumps(key)}: {_value(key, record[key])}" for key in keys if key in record]
     return "{\n" + ",\n".join(lines) + "\n}\n"
 

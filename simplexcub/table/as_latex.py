@@ -115,8 +115,8 @@ def _caption(rule: Rule, page: Sheet, said: dict[str, Fact], *, example: bool) -
     legend = page.legend
     if example and page.by_orbits and rule.space == "all":
         legend += f" {expansion(rule)}"
-    for name in ("w", "W"):
-        legend = legend.replace(f" {name} is ", f" ${name}$ is ").replace(f"; {name} is", f"; ${name}$ is")
+    for name, symbol in (("w", "w"), ("W", "W"), ("w2", "w_2")):
+        legend = legend.replace(f" {name} is ", f" ${symbol}$ is ").replace(f"; {name} is", f"; ${symbol}$ is")
     return (
         f"{tex.prose(measure_name(rule.measure))}: {counted(len(rule), noun(rule))}{orbits}, "
         f"exact for {said['exact for'].tex}. Density {said['density'].tex}, of total mass~1; weights sum to~1. "

@@ -4,6 +4,7 @@ from __future__ import annotations
 
 import io
 import json
+from typing import Any
 
 import numpy as np
 
@@ -15,11 +16,20 @@ def export(rule: Rule) -> bytes:
     """The rule as the bytes of an ``.npz`` file.
 
     It holds ``nodes`` (M, N) and ``weights`` (M,) in double precision, ``node_decimals`` and ``weight_decimals`` as
-    text with all digits, ``measure`` as JSON text, ``degree``, and ``description``, rows of label and text.
+    text with all digits, ``measure`` as JSON text, ``degree``, and ``description``, rows of label and text. Embedded
+    weights are there as ``embedded_weights``, with their decimals and degree.
     """
     archive = io.BytesIO()
+    second: dict[str, Any] = {}
+    if rule.embedded is not None:
+        second = {
+            "embedded_weights": rule.embedded_weights,
+            "embedded_weight_decimals": np.array(rule.embedded.weight_decimals, dtype=np.str_),
+            "embedded_degree": np.array(rule.embedded.degree),
+        }
     np.savez(
         archive,
+        **second,
         nodes=rule.nodes,
         weights=rule.weights,
         node_decimals=np.array(rule.node_decimals, dtype=np.str_),

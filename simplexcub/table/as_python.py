@@ -25,7 +25,7 @@ WEIGHT_DECIMALS = (
 {weights}
 )
 
-nodes = np.array([[float(x) for x in node] for node in NODE_DECIMALS])
+{second}nodes = np.array([[float(x) for x in node] for node in NODE_DECIMALS])
 weights = np.array([float(w) for w in WEIGHT_DECIMALS])
 
 
@@ -33,6 +33,14 @@ def average(f):
     """Mean of f: the sum of weights times f(nodes); f takes shape {shape} and returns one value per node."""
     return np.tensordot(weights, np.asarray(f(nodes)), axes=1)
 '''
+_SECOND = """# A second set of weights, exact to degree {degree}; its difference from the first shows an error.
+EMBEDDED_DEGREE = {degree}
+EMBEDDED_WEIGHT_DECIMALS = (
+{weights}
+)
+embedded_weights = np.array([float(w) for w in EMBEDDED_WEIGHT_DECIMALS])
+
+"""
 
 
 def export(rule: Rule) -> str:
@@ -49,10 +57,17 @@ def export(rule: Rule) -> str:
         degree=rule.degree,
         measure=_literal(rule.measure.parameters()),
         nodes="\n".join(f"    {_tuple(node)}," for node in rule.node_decimals),
-        weights="\n".join(f'    "{weight}",' for weight in rule.weight_decimals),
+        weights=_column(rule.weight_decimals),
+        second=_SECOND.format(degree=rule.embedded.degree, weights=_column(rule.embedded.weight_decimals))
+        if rule.embedded
+        else "",
         shape=rule.nodes.shape,
     )
     return f'"""{docstring}\n"""\n{code}'
+
+
+def _column(texts: Iterable[str]) -> str:
+    return "\n".join(f'    "{text}",' for text in texts)
 
 
 def _tuple(texts: Iterable[str]) -> str:

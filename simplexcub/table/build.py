@@ -21,9 +21,10 @@ from simplexcub.search import solve
 from simplexcub.table.describe import counted
 from simplexcub.table.files import read_text
 from simplexcub.table.formats import save
+from simplexcub.table.kind import Kind, is_plain, place_for
 from simplexcub.table.reading import parse
 from simplexcub.table.record import SPACES
-from simplexcub.table.shipped import add, folder, kind_for, place_for, reindex
+from simplexcub.table.shipped import add, folder, reindex
 from simplexcub.verify import verify
 
 log = logging.getLogger(__name__)
@@ -144,17 +145,18 @@ def refresh(where: Path, say: Callable[[str], None] = log.info) -> None:
 
 
 def _exists(measure: Measure, degree: int, where: Path, space: Space) -> bool:
-    kind = kind_for(space, "none" if space == "ordered" else "full", degree)
+    kind = Kind(space, "none" if space == "ordered" else "full").stem(degree)
     return any((where / place_for(measure)).glob(f"{kind}-*.json"))
 
 
 def _fewest(rule: Rule, where: Path) -> bool:
     """Whether a rule beats every table of its measure and degree; those without full symmetry then go."""
-    tables = list((where / place_for(rule.measure)).glob(f"{rule.space}-*-t{rule.degree:02d}-*.json"))
+    every = (where / place_for(rule.measure)).glob(f"{rule.space}-*-t{rule.degree:02d}-*.json")
+    tables = [path for path in every if is_plain(path.stem)]
     if any(int(path.stem.rsplit("-", 1)[1]) <= len(rule) for path in tables):
         return False
     for path in tables:
-        if not path.name.startswith(kind_for(rule.space, "full", rule.degree)):
+        if not path.name.startswith(Kind(rule.space, "full").stem(rule.degree)):
             path.unlink()
     return True
 

@@ -6,10 +6,14 @@ import re
 from collections.abc import Sequence
 from typing import NamedTuple
 
+from simplexcub.entropic import named
 from simplexcub.measures import Measure
 from simplexcub.rule import Rule, Verification
+from simplexcub.table.sheet import SECOND
+from simplexcub.verify.embedded import embedded_faults
+from simplexcub.verify.entropic import also_faults
 from simplexcub.verify.printed import read_printed
-from simplexcub.verify.structure import claim_faults, node_faults, weight_faults
+from simplexcub.verify.structure import claim_faults, is_invariant, node_faults, weight_faults
 
 EXACT_FOR = {
     "all": "every polynomial of degree ≤ {}",
@@ -17,6 +21,7 @@ EXACT_FOR = {
     "ordered": "every polynomial of degree ≤ {} in the ordered spectrum λ1 ≥ … ≥ λN",
 }
 _KINDS = {"all": "", "symmetric": "symmetric ", "ordered": "ordered "}
+SEPARATOR = ", and "  # between the polynomials and each further function
 _NAMES = {
     "flat": "Flat measure",
     "dirichlet": "Dirichlet measure",
@@ -67,7 +72,9 @@ class Fact(NamedTuple):
 
 def heading(rule: Rule) -> str:
     """What the rule is, in a few words."""
-    return f"{measure_name(rule.measure)}, {_KINDS[rule.space]}degree {rule.degree}, {counted(len(rule), noun(rule))}"
+    further = "".join(f" and {named(name).formula}" for name in rule.also)
+    degree = f"{_KINDS[rule.space]}degree {rule.degree}{further}"
+    return f"{measure_name(rule.measure)}, {degree}, {counted(len(rule), noun(rule))}"
 
 
 def noun(rule: Rule) -> str:
@@ -104,7 +111,14 @@ def status(rule: Rule) -> str:
     printed = read_printed(rule)
     weights = weight_faults(printed, equal=rule.equal_weights)
     faults = [*weights, *node_faults(printed), *claim_faults(rule, printed)]
-    return f"NOT VERIFIED: {'; '.join(faults)}" if faults else "verified"
+    faults += also_faults(rule, rule.measure, printed)
+    faults += embedded_faults(
+        rule, rule.measure, printed, invariant=rule.measure.is_symmetric and is_invariant(printed)
+    )
+    if faults:
+        return f"NOT VERIFIED: {'; '.join(faults)}"
+    unknown = [name for name in rule.also if name.startswith("user:")]
+    return f"verified, but for {', '.join(unknown)}, of which a table has only the name" if unknown else "verified"
 
 
 def facts(rule: Rule) -> list[Fact]:
@@ -118,7 +132,7 @@ def facts(rule: Rule) -> list[Fact]:
         with_respect = f"dλ1 … dλ{measure.N - 1}"
         tex_differential = rf"d\lambda_1\cdots d\lambda_{{{measure.N - 1}}}"
     state = status(rule)
-    exact_for = EXACT_FOR[rule.space].format(rule.degree)
+    exact_for = SEPARATOR.join([EXACT_FOR[rule.space].format(rule.degree), *(named(x).formula for x in rule.also)])
     source = rule.provenance
     made_by = f"{source.package}, seed {source.seed}, {source.date}"
     return [
@@ -126,11 +140,13 @@ def facts(rule: Rule) -> list[Fact]:
         _fact("measure", measure_line(measure)),
         Fact("density", f"{plain}  with respect to {with_respect}", rf"${tex}$ with respect to ${tex_differential}$"),
         _fact("exact for", exact_for),
+        *([_fact("also", ", ".join(rule.also))] if rule.also else []),
         _fact("space", rule.space),
         _fact("degree", str(rule.degree)),
         _fact("nodes", _nodes(rule)),
         _fact("symmetry", rule.symmetry),
         _fact("weights", _weights(rule)),
+        *_further_weights(rule),
         _fact("digits", str(rule.digits)),
         *_checks(rule.verification, rule),
         _fact("made by", " ".join(made_by.split())),
@@ -171,6 +187,16 @@ def _nodes(rule: Rule) -> str:
 def _weights(rule: Rule) -> str:
     signs = "positive" if min(rule.weights) > 0 else "some not positive"
     return f"{signs}, all equal" if rule.equal_weights else signs
+
+
+def _further_weights(rule: Rule) -> list[Fact]:
+    found = []
+    if rule.integer_weights:
+        shown = " ".join(map(str, rule.integer_weights))
+        found.append(_fact("integers", f"the weights times {sum(rule.integer_weights)}: {shown}"))
+    if rule.embedded:
+        found.append(_fact("embedded", f"weights {SECOND} on the same nodes, to degree {rule.embedded.degree}"))
+    return found
 
 
 def efficiency(bound: int, nodes: int) -> str:

@@ -9,13 +9,14 @@ from typing import Any
 from simplexcub.errors import TableError
 from simplexcub.rule import Orbit, Provenance, Rule
 from simplexcub.table.as_text import NONE
-from simplexcub.table.describe import EXACT_FOR
+from simplexcub.table.describe import EXACT_FOR, SEPARATOR
 from simplexcub.table.orbits import count_nodes, expand
-from simplexcub.table.record import check_head, measure_from
+from simplexcub.table.record import check_head, extras_from, measure_from
 from simplexcub.table.sanity import check_number
-from simplexcub.table.sheet import multiplicities
+from simplexcub.table.sheet import SECOND, multiplicities
 
 _AGAIN = "Take an unchanged copy."
+_WEIGHTS = ("w", "W", SECOND)
 _LEADING_CELLS = {"orbit": 3, "node": 1}
 
 
@@ -39,10 +40,11 @@ def parse(text: str, where: str) -> Rule:
         raise TableError(f"{where} must state {error.args[0]!r}", "a heading without it", _AGAIN) from None
     nodes: list[tuple[str, ...]] = []
     weights: list[str] = []
+    second: list[str] = []
     orbits: list[Orbit] = []
     for lead, numbers in _entries(lines[start:], where):
         place = f"{where}, entry {lead[0]}"
-        values = tuple(number for label, number in numbers.items() if label not in ("w", "W"))
+        values = tuple(number for label, number in numbers.items() if label not in _WEIGHTS)
         weight = numbers.get("w", numbers.get("W"))
         if weight is None or (len(lead) > 1 and "W" not in numbers):
             raise TableError(f"{place} must have its weights", "an entry without", f"It may be cut short. {_AGAIN}")
@@ -57,6 +59,7 @@ def parse(text: str, where: str) -> Rule:
             expanded = list(expand(orbit, head["space"]))
         nodes += expanded
         weights += [weight] * len(expanded)
+        second += [numbers.get(SECOND, "")] * len(expanded)
     if len(nodes) != count:
         raise TableError(f"{where}: there must be {count} nodes", len(nodes), f"It may be cut short. {_AGAIN}")
     if any(len(node) != measure.N for node in nodes):
@@ -68,7 +71,22 @@ def parse(text: str, where: str) -> Rule:
         provenance=provenance,
         orbits=tuple(orbits),
         **head,
+        **extras_from(_extras(said, second, where), len(nodes), head["degree"], where),
     )
+
+
+def _extras(said: Mapping[str, str], second: list[str], where: str) -> dict[str, Any]:
+    """The optional keys of a table record that the facts tell."""
+    record: dict[str, Any] = {}
+    if "also" in said:
+        record["also"] = said["also"].split(", ")
+    if "integers" in said:
+        numbers = said["integers"].partition(": ")[2].split(" ")
+        record["integer_weights"] = [_integer(text, f"{where}: integers") for text in numbers]
+    if "embedded" in said:
+        degree = _integer(said["embedded"].rpartition(" ")[2], f"{where}: embedded degree")
+        record["embedded"] = {"degree": degree, "weights": second}
+    return record
 
 
 def _facts(lines: Iterable[str]) -> dict[str, str]:
@@ -103,6 +121,7 @@ def _heading(said: Mapping[str, str], where: str) -> tuple[dict[str, Any], int, 
 
 
 def _exact_for(text: str, where: str) -> tuple[str, int]:
+    text = text.partition(SEPARATOR)[0]
     for space, sentence in EXACT_FOR.items():
         before, after = sentence.split("{}")
         middle = text.removeprefix(before).removesuffix(after)
@@ -142,7 +161,7 @@ def _entries(lines: list[str], where: str) -> list[tuple[list[str], dict[str, st
     if header[0] not in _LEADING_CELLS:
         raise TableError(f"{where}: the columns must be as they were written", repr(lines[0].strip()), _AGAIN)
     leading = _LEADING_CELLS[header[0]]
-    one_line = header[-1] in ("w", "W")
+    one_line = header[-1] in _WEIGHTS
     entries: list[tuple[list[str], dict[str, str]]] = []
     label = ""
     for line in lines[2:]:

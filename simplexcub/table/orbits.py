@@ -37,7 +37,12 @@ def node_weights(rule: Rule) -> list[str] | None:
     for orbit in rule.orbits:
         size = count_nodes(orbit, rule.space)
         weights = set(rule.weight_decimals[position : position + size])
-        if len(weights) != 1 or tuple(expand(orbit, rule.space)) != rule.node_decimals[position : position + size]:
+        second = set(rule.embedded.weight_decimals[position : position + size]) if rule.embedded else {""}
+        if (
+            len(weights) != 1
+            or len(second) != 1
+            or tuple(expand(orbit, rule.space)) != rule.node_decimals[position : position + size]
+        ):
             return None
         shares.append(weights.pop())
         position += size

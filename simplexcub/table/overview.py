@@ -85,7 +85,11 @@ def _cells(line: Shipped) -> tuple[str, ...]:
     if line.family == "hilbert-schmidt":
         shown.pop("K", None)
     parameters = [f"{name} = {' '.join(x) if isinstance(x, list) else x}" for name, x in shown.items()]
-    mark = published(line.family, line.N, line.degree, line.symmetry) if line.space == "all" else None
+    mark = (
+        published(line.family, line.N, line.degree, line.symmetry)
+        if line.space == "all" and not line.kind.told
+        else None
+    )
     return (
         ", ".join([line.family, *parameters]),
         str(line.N),

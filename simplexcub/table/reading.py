@@ -84,6 +84,9 @@ def read_bare(path: str | os.PathLike[str], *, N: int | None = None) -> Rule:
         symmetry="full" if rule.space == "symmetric" else "none",
         equal_weights=False,
         orbits=(),
+        also=(),
+        integer_weights=(),
+        embedded=None,
         verification=None,
     )
 

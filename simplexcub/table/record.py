@@ -8,6 +8,8 @@ from collections.abc import Mapping, Sequence
 from dataclasses import asdict
 from typing import Any, cast, get_args
 
+from simplexcub.embedded import Embedded
+from simplexcub.entropic import canonical
 from simplexcub.errors import InputError, TableError
 from simplexcub.measures import Measure, from_parameters
 from simplexcub.rule import Orbit, Provenance, Rule, Space, Verification
@@ -28,6 +30,8 @@ _VERIFICATION = {
     "proof": (dict, type(None)),
 }
 _PROVENANCE = {"package": str, "seed": int, "date": str, "method": str}
+_EMBEDDED = {"degree": int, "weights": list}
+_OPTIONAL = {"orbits": list, "also": list, "integer_weights": list, "embedded": dict}
 _ORBIT = {"multiplicities": list, "values": list, "weight": str}
 _HEAD = {"measure": dict, "space": str, "degree": int, "symmetry": str, "equal_weights": bool, "digits": int}
 _RULE = {**_HEAD, "nodes": list, "weights": list, "verification": (dict, type(None)), "provenance": dict}
@@ -49,6 +53,12 @@ def to_record(rule: Rule) -> dict[str, Any]:
     }
     if rule.orbits:
         record["orbits"] = [orbit_record(orbit) for orbit in rule.orbits]
+    if rule.also:
+        record["also"] = list(rule.also)
+    if rule.integer_weights:
+        record["integer_weights"] = list(rule.integer_weights)
+    if rule.embedded is not None:
+        record["embedded"] = {"degree": rule.embedded.degree, "weights": list(rule.embedded.weight_decimals)}
     return record
 
 
@@ -70,7 +80,7 @@ def from_record(record: Mapping[str, Any], where: str) -> Rule:
     Parameters
     ----------
     record : mapping
-        The keys of `to_record`; ``orbits`` may be left out.
+        The keys of `to_record`; those of `_OPTIONAL` may be left out.
     where : str
         Name of the file, for messages.
 
@@ -79,7 +89,7 @@ def from_record(record: Mapping[str, Any], where: str) -> Rule:
     TableError
         A key missing, unknown or of the wrong type; a number that is none.
     """
-    check_keys(record, _RULE, where, optional={"orbits": list})
+    check_keys(record, _RULE, where, optional=_OPTIONAL)
     measure = measure_from(record["measure"], where)
     head = check_head(record, where)
     nodes = tuple(_decimals(node, f"{where}: nodes[{k}]", measure.N) for k, node in enumerate(record["nodes"]))
@@ -96,8 +106,33 @@ def from_record(record: Mapping[str, Any], where: str) -> Rule:
         provenance=Provenance(**provenance),
         orbits=orbits,
         verification=verification_from(record["verification"], f"{where}: verification"),
+        **extras_from(record, len(nodes), head["degree"], where),
         **head,
     )
+
+
+def extras_from(record: Mapping[str, Any], nodes: int, degree: int, where: str) -> dict[str, Any]:
+    """``also``, ``integer_weights`` and ``embedded`` of a table, as keyword arguments of `Rule`."""
+    found: dict[str, Any] = {}
+    also = record.get("also", [])
+    if not all(isinstance(name, str) for name in also):
+        raise TableError(f"{where}: also must be a list of names", repr(also))
+    try:
+        found["also"] = tuple(canonical(name) for name in also)
+    except InputError as error:
+        raise TableError(f"{where}: {error.rule}", error.value, error.remedy) from None
+    found["integer_weights"] = _integers(record.get("integer_weights", []), f"{where}: integer_weights")
+    if any(w < 1 for w in found["integer_weights"]) or len(found["integer_weights"]) not in (0, nodes):
+        raise TableError(f"{where}: integer_weights must be one positive integer per node", "others")
+    if "embedded" in record:
+        second = record["embedded"]
+        check_keys(second, _EMBEDDED, f"{where}: embedded")
+        if not 0 <= second["degree"] < max(degree, 1):
+            raise TableError(f"{where}: the embedded degree must be below {degree}", second["degree"])
+        found["embedded"] = Embedded(
+            second["degree"], _decimals(second["weights"], f"{where}: embedded weights", nodes)
+        )
+    return found
 
 
 def check_rule(rule: Rule, where: str) -> None:

@@ -11,6 +11,7 @@ from dataclasses import dataclass
 from simplexcub.rule import Orbit, Rule
 from simplexcub.table.orbits import count_nodes, node_weights
 
+SECOND = "w2"  # label of the embedded weights
 _LETTERS = "abcdefghijklmnopqrstuv"  # w and W are the weights
 _GROUP = 10
 _UNGROUPED = 20
@@ -51,13 +52,16 @@ def sheet(rule: Rule) -> Sheet:
     if shares is None:
         return _by_nodes(rule)
     whole = rule.space == "all"
-    entries = []
+    entries, position = [], 0
     for k, (orbit, share) in enumerate(zip(rule.orbits, shares, strict=True), 1):
         names = letters(len(orbit.values))
         numbers = list(zip(names, orbit.values, strict=True))
         if whole:
             numbers.append(("w", share))
         numbers.append(("W", orbit.weight))
+        if rule.embedded:
+            numbers.append((SECOND, rule.embedded.weight_decimals[position]))
+        position += count_nodes(orbit, rule.space)
         entries.append(Entry((str(k), str(count_nodes(orbit, rule.space)), pattern(orbit)), tuple(numbers)))
     most = max(len(orbit.values) for orbit in rule.orbits)
     if whole:
@@ -67,20 +71,27 @@ def sheet(rule: Rule) -> Sheet:
         )
     else:
         legend = "Every pattern, sorted with its largest value first, is a node; W is its weight."
-    labels = (*letters(most), *(("w", "W") if whole else ("W",)))
+    labels = (*letters(most), *(("w", "W") if whole else ("W",)), *([SECOND] if rule.embedded else []))
+    legend += _second(rule)
     return Sheet(True, ("orbit", "nodes", "pattern"), labels, tuple(entries), legend)
 
 
 def _by_nodes(rule: Rule) -> Sheet:
-    labels = (*(f"λ{i}" for i in range(1, rule.measure.N + 1)), "w")
+    coordinates = tuple(f"λ{i}" for i in range(1, rule.measure.N + 1))
+    columns = [*zip(*rule.node_decimals, strict=True), rule.weight_decimals]
+    columns += [rule.embedded.weight_decimals] if rule.embedded else []
+    labels = (*coordinates, "w", *([SECOND] if rule.embedded else []))
     entries = tuple(
-        Entry((str(k),), tuple(zip(labels, (*node, weight), strict=True)))
-        for k, (node, weight) in enumerate(zip(rule.node_decimals, rule.weight_decimals, strict=True), 1)
+        Entry((str(k),), tuple(zip(labels, row, strict=True))) for k, row in enumerate(zip(*columns, strict=True), 1)
     )
     what = "a point" if rule.space == "all" else "an ordered spectrum"
-    names = ", ".join(labels[:-1]) if rule.measure.N <= 3 else f"λ1, …, λ{rule.measure.N}"
-    legend = f"A node is {what} {names} on the simplex; w is its weight."
+    names = ", ".join(coordinates) if rule.measure.N <= 3 else f"λ1, …, λ{rule.measure.N}"
+    legend = f"A node is {what} {names} on the simplex; w is its weight.{_second(rule)}"
     return Sheet(False, ("node",), labels, entries, legend)
+
+
+def _second(rule: Rule) -> str:
+    return f" {SECOND} is its weight in the embedded rule." if rule.embedded else ""
 
 
 def letters(count: int) -> tuple[str, ...]:

@@ -7,19 +7,22 @@ from a wheel. ``index.json`` is made from the tables themselves by `reindex`, so
 from __future__ import annotations
 
 import json
-from collections.abc import Iterator, Mapping
+from collections.abc import Iterator, Mapping, Sequence
 from dataclasses import dataclass
 from pathlib import Path
 from typing import Any
 
+from simplexcub.entropic import canonical
 from simplexcub.errors import InputError, NothingFound, TableError
 from simplexcub.measures import FAMILIES, Measure
 from simplexcub.rule import Rule
 from simplexcub.table.as_json import export, parse
 from simplexcub.table.files import read_text, write_atomically
+from simplexcub.table.kind import Kind, kind_of, place_for
 from simplexcub.table.record import SPACES
 
 INDEX = "index.json"
+_SPECIAL = ("also", "integer_weights", "embedded")
 _PACKAGE = Path(__file__).resolve().parent.parent
 
 
@@ -39,6 +42,8 @@ class Shipped:
         Whether the table carries a proof that an exact rule lies nearby.
     file : str
         Path below the folder of tables.
+    also, integer_weights, embedded
+        What makes it special, if anything: more functions, integers as weights, the degree of embedded weights.
     """
 
     measure: Mapping[str, Any]
@@ -51,6 +56,15 @@ class Shipped:
     digits: int
     proven: bool
     file: str
+    also: Sequence[str] = ()
+    integer_weights: bool = False
+    embedded: int | None = None
+
+    @property
+    def kind(self) -> Kind:
+        """What it is, apart from measure, degree and number of nodes."""
+        fixed = (self.equal_weights, self.integer_weights)
+        return Kind(self.space, self.symmetry, *fixed, tuple(self.also), self.embedded is not None)
 
     @property
     def family(self) -> str:
@@ -70,7 +84,7 @@ def folder() -> Path:
 
 
 def catalogue(family: str | None = None, *, N: int | None = None, space: str | None = None) -> tuple[Shipped, ...]:
-    """The shipped tables, sorted by measure, N, space and degree.
+    """The shipped tables, sorted by measure, N, space, what is special, and degree.
 
     Parameters
     ----------
@@ -96,7 +110,16 @@ def catalogue(family: str | None = None, *, N: int | None = None, space: str | N
     )
 
 
-def load(measure: Measure, *, degree: int, space: str = "all", symmetry: str | None = None) -> Rule:
+def load(
+    measure: Measure,
+    *,
+    degree: int,
+    space: str = "all",
+    symmetry: str | None = None,
+    equal_weights: bool = False,
+    also: str | Sequence[str] = (),
+    embedded: bool = False,
+) -> Rule:
     """The cheapest shipped rule that is exact to `degree` or beyond: fewest nodes, then lowest degree.
 
     Parameters
@@ -108,6 +131,10 @@ def load(measure: Measure, *, degree: int, space: str = "all", symmetry: str | N
         What the rule must be exact on.
     symmetry : str, optional
         Only node sets of this symmetry.
+    equal_weights, embedded : bool
+        Only rules of equal weights, or with embedded weights; none of them by default.
+    also : str or sequence of str
+        Only rules that average these functions exactly as well, such as ``entropy``.
 
     Raises
     ------
@@ -127,12 +154,14 @@ def load(measure: Measure, *, degree: int, space: str = "all", symmetry: str | N
     if isinstance(degree, bool) or not isinstance(degree, int) or degree < 1:
         raise InputError("degree must be an integer of at least 1", repr(degree))
     _check_space(space)
+    wanted_also = tuple(canonical(name) for name in ((also,) if isinstance(also, str) else also))
     record = measure.parameters()
     here = folder()
     fitting = [
         item
         for item in _index(here)
         if item.measure == record and item.space == space and symmetry in (None, item.symmetry)
+        if item.kind.serves(equal_weights=equal_weights, also=wanted_also, embedded=embedded)
     ]
     enough = [item for item in fitting if item.degree >= degree]
     if not enough:
@@ -140,7 +169,9 @@ def load(measure: Measure, *, degree: int, space: str = "all", symmetry: str | N
         tried = f"the shipped ones end at degree {highest}" if fitting else "none is shipped for it"
         kind = "" if symmetry is None else f"{symmetry} symmetry, "
         wanted = f"shipped table for {measure}, {space}, {kind}degree {degree}"
-        raise NothingFound(wanted, tried, f"Make one: {solve_command(measure, degree, space=space, symmetry=symmetry)}")
+        command = solve_command(measure, degree, space=space, symmetry=symmetry)
+        more = Kind(space, "", equal_weights, False, wanted_also, embedded)
+        raise NothingFound(f"{wanted}{more.told}", tried, f"Make one: {command}{more.options}")
     best = min(enough, key=lambda item: (item.nodes, item.degree, item.file))
     return parse(read_text(here / best.file), best.file)
 
@@ -160,33 +191,6 @@ def solve_command(measure: Measure, degree: int, *, space: str = "all", symmetry
     return " ".join(words)
 
 
-def place_for(measure: Measure) -> Path:
-    """The folder of a measure's tables, below the folder of all tables.
-
-    Examples
-    --------
-    >>> from simplexcub.measures import dirichlet
-    >>> print(place_for(dirichlet(["1/2", "1/2"])))
-    dirichlet/N2-1over2-1over2
-    """
-    record = measure.parameters()
-    parts = [f"N{measure.N}", *(a.replace("/", "over") for a in record.get("alpha", ()))]
-    if measure.family == "induced":
-        parts.append(f"K{record['K']}")
-    return Path(measure.family, "-".join(parts))
-
-
-def kind_for(space: str, symmetry: str, degree: int, *, equal_weights: bool = False) -> str:
-    """Start of a table's file name, which its number of nodes completes; names sort by space, symmetry and degree.
-
-    Examples
-    --------
-    >>> kind_for("all", "full", 7)
-    'all-full-t07'
-    """
-    return "-".join([space, symmetry, *(["equal"] if equal_weights else []), f"t{degree:02d}"])
-
-
 def add(rule: Rule, where: Path) -> Path | None:
     """Put a rule among the tables in the folder `where`, unless one of its kind with as few nodes is there already.
 
@@ -196,7 +200,7 @@ def add(rule: Rule, where: Path) -> Path | None:
         The file written; tables of the same kind with more nodes are removed after that.
     """
     home = where / place_for(rule.measure)
-    kind = kind_for(rule.space, rule.symmetry, rule.degree, equal_weights=rule.equal_weights)
+    kind = kind_of(rule).stem(rule.degree)
     rivals = {old: int(old.stem.rsplit("-", 1)[1]) for old in home.glob(f"{kind}-*.json")}
     if any(nodes <= len(rule) for nodes in rivals.values()):
         return None
@@ -217,10 +221,15 @@ def reindex(where: Path) -> tuple[Shipped, ...]:
         A table that is damaged or has no verification.
     """
     lines = sorted(_lines(where), key=_order)
-    body = ",\n".join("  " + json.dumps(vars(line), ensure_ascii=False) for line in lines)
+    body = ",\n".join("  " + json.dumps(_told(line), ensure_ascii=False) for line in lines)
     text = f'{{\n "format": "simplexcub-index",\n "version": 1,\n "tables": [\n{body}\n ]\n}}\n'
     write_atomically(where / INDEX, text.encode("utf-8"))
     return tuple(lines)
+
+
+def _told(line: Shipped) -> dict[str, Any]:
+    """The fields of an index line, without those of special tables where it is none."""
+    return {key: value for key, value in vars(line).items() if key not in _SPECIAL or value}
 
 
 def _lines(where: Path) -> Iterator[Shipped]:
@@ -242,6 +251,9 @@ def _lines(where: Path) -> Iterator[Shipped]:
             rule.digits,
             found.proof is not None and found.proof.get("holds") is True,
             path.relative_to(where).as_posix(),
+            list(rule.also),
+            bool(rule.integer_weights),
+            None if rule.embedded is None else rule.embedded.degree,
         )
 
 
@@ -252,6 +264,7 @@ def _order(line: Shipped) -> tuple[object, ...]:
         line.N,
         *parameters,
         SPACES.index(line.space),
+        line.kind.told,  # plain ones first
         line.degree,
         line.nodes,
         line.file,

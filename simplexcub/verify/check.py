@@ -14,6 +14,8 @@ from simplexcub.errors import InputError
 from simplexcub.measures import Measure, ordered
 from simplexcub.rule import Rule, Verification
 from simplexcub.verify.bounds import dimension, lower_bound
+from simplexcub.verify.embedded import embedded_faults
+from simplexcub.verify.entropic import AlsoCheck, also_faults, check_also
 from simplexcub.verify.printed import Printed, read_printed
 from simplexcub.verify.proof import prove as find_proof
 from simplexcub.verify.proof_result import Proof
@@ -57,6 +59,8 @@ class Report:
         One sentence for each thing that is wrong; empty where `holds`.
     proof : Proof or None
         The certificate, or why there is none; None where it was not asked for or the decimals have no degree.
+    also : tuple of AlsoCheck
+        The functions besides polynomials that the rule claims, each held against its mean.
     """
 
     rule: Rule
@@ -67,6 +71,7 @@ class Report:
     verification: Verification
     reasons: tuple[str, ...]
     proof: Proof | None = None
+    also: tuple[AlsoCheck, ...] = ()
 
 
 def verify(
@@ -142,6 +147,9 @@ def verify(
     bound = lower_bound(against, judged.degree, rule.space)
     if rule.degree and len(rule) < bound:
         reasons.append(f"degree {rule.degree} claimed with {len(rule)} nodes, but no such rule has fewer than {bound}")
+    also = check_also(rule, against, printed)
+    reasons += also_faults(rule, against, printed)
+    reasons += embedded_faults(rule, against, printed, invariant=trial.invariant)
     degree = rule.degree or fails_at - 1
     proof = find_proof(rule, measure=against, degree=degree) if prove and degree > 0 else None
     if rule.degree and proof is not None and proof.holds and proof.units > FARTHEST:
@@ -157,7 +165,7 @@ def verify(
         proof=None if proof is None else proof.record(),
     )
     digits = _agreeing(printed.digits, judged.ratio)
-    return Report(rule, against, not reasons, fails_at - 1, digits, verification, tuple(reasons), proof)
+    return Report(rule, against, not reasons, fails_at - 1, digits, verification, tuple(reasons), proof, also)
 
 
 class _Trial:

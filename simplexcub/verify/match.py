@@ -31,7 +31,7 @@ def match(rule: Rule) -> list[Report]:
     rule : Rule
         In space ``ordered`` measures without exact moments of the ordered spectrum are left out.
     """
-    bare = replace(rule, degree=0, orbits=(), equal_weights=False)
+    bare = replace(rule, degree=0, orbits=(), equal_weights=False, also=(), integer_weights=(), embedded=None)
     found = [verify(replace(bare, measure=measure)) for measure in candidates(rule.measure.N) if _fits(measure, rule)]
     return sorted(found, key=lambda report: -report.exact_degree)
 

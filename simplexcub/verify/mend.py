@@ -110,6 +110,7 @@ def _printed_in_full(rule: Rule, measure: Measure, proof: Proof, digits: int) ->
         equal_weights=rule.equal_weights and len(set(weights)) == 1,
         digits=digits,
         orbits=orbits,
+        also=rule.also,
     )
 
 

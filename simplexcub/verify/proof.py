@@ -11,15 +11,18 @@ import math
 from collections.abc import Iterator
 from fractions import Fraction
 
+from simplexcub.entropic import named
 from simplexcub.errors import InputError
 from simplexcub.measures import Measure, ordered
 from simplexcub.rule import Rule, Space
 from simplexcub.verify.printed import Printed, read_printed
+from simplexcub.verify.proof_entropic import ExtendedSystem
 from simplexcub.verify.proof_newton import NotProven, find_zero
 from simplexcub.verify.proof_orbits import Structure, find_structure
 from simplexcub.verify.proof_result import Proof, conclude
 from simplexcub.verify.proof_snap import symmetrised
-from simplexcub.verify.proof_system import MonomialSystem, PowerSumSystem, System
+from simplexcub.verify.proof_system import MonomialSystem, PowerSumSystem, Shares, System
+from simplexcub.verify.structure import fixed_shares
 
 NEWTON = "Newton-Kantorovich in integers"
 RATIONAL = "rational arithmetic"
@@ -84,10 +87,15 @@ def prove(
     if rule.space == "all" and against.is_symmetric:
         snapped = symmetrised(printed, 100 / 10**printed.digits if snap is None else snap)
     structure = find_structure(snapped, against, rule.space)
-    equal = rule.equal_weights and len(set(printed.weights)) == 1
+    shares = fixed_shares(rule, printed, [orbit.first for orbit in structure.orbits])
     method = NEWTON
+    also = [named(name) for name in rule.also]
     try:
-        system = _system(structure, against, wanted, rule.space, equal, len(rule))
+        if any(label.power is None for label in also):
+            raise NotProven("of a function of the user's only the name is known")
+        system = _system(structure, against, wanted, rule.space, shares, len(rule))
+        if also:
+            system = ExtendedSystem(system, also, against)
         exact = _rational(system, snapped)
         if exact is not None:
             method = RATIONAL
@@ -104,7 +112,7 @@ def prove(
         return Proof(False, method, wanted, structure.group, failure.reason)
 
 
-def _system(structure: Structure, measure: Measure, degree: int, space: Space, equal: bool, nodes: int) -> System:
+def _system(structure: Structure, measure: Measure, degree: int, space: Space, shares: Shares, nodes: int) -> System:
     n = measure.N
     if structure.full:
         size = _partitions_up_to(degree, n)
@@ -117,7 +125,7 @@ def _system(structure: Structure, measure: Measure, degree: int, space: Space, e
     if size > MOST_EQUATIONS or terms > MOST_TERMS or size * terms > MOST_WORK:
         raise NotProven(f"its {size} equations with {nodes} nodes are too many to be proven here")
     kind = PowerSumSystem if structure.full else MonomialSystem
-    return kind(structure, measure, degree, space, equal, nodes)
+    return kind(structure, measure, degree, space, shares)
 
 
 def _partitions_up_to(degree: int, n: int) -> int:
@@ -139,8 +147,8 @@ def _rational(system: System, printed: Printed) -> tuple[list[Fraction], list[li
     weights: list[Fraction] = []
     values: list[list[Fraction]] = []
     denominator = system.factor
-    for orbit in system.structure.orbits:
-        share = Fraction(1, system.equal_weight) if system.equal_weight else _small(orbit.weight, printed)
+    for o, orbit in enumerate(system.structure.orbits):
+        share = system.shares[o] if system.shares else _small(orbit.weight, printed)
         blocks = [_small(v, printed) for v in orbit.values]
         if sum(m * v for m, v in zip(orbit.multiplicities, blocks, strict=True)) != 1:
             return None

@@ -98,7 +98,7 @@ def conclude(
     """
     weights, values = exact
     radius = zero.radius if zero else Fraction(0)
-    weight_room = radius if system.equal_weight is None else Fraction(0)
+    weight_room = radius if system.shares is None else Fraction(0)
     rooms = [[radius * Fraction(float(s)) for s in system.speeds(orbit)] for orbit in system.structure.orbits]
     for orbit, weight, blocks, room in zip(system.structure.orbits, weights, values, rooms, strict=True):
         if abs(weight) <= weight_room or (weight > 0) != (orbit.weight > 0):

@@ -31,6 +31,7 @@ from simplexcub.verify.residuals import compositions, mean
 
 FloatArray = NDArray[np.float64]
 Exponents = tuple[int, ...]
+Shares = tuple[Fraction, ...] | None
 
 ROUNDING = 1 + 1e-9  # above what some thousand double operations on positive numbers can lose
 
@@ -46,24 +47,24 @@ class System(ABC):
         E[g_e] per unit of weight, one for each equation.
     factor : int
         lcm(1 … N), or a multiple: what denominators must be divisible by.
-    equal_weight : int or None
-        M where all weights are fixed at 1/M, else None.
+    shares : tuple of Fraction or None
+        The weight of a node of each orbit where all weights are fixed, else None.
     unknowns : list of (orbit, block)
         What each unknown is; block −1 stands for the weight.
     """
 
     means: list[Fraction]
 
-    def __init__(self, structure: Structure, measure: Measure, degree: int, space: Space, equal: bool, nodes: int):
+    def __init__(self, structure: Structure, measure: Measure, degree: int, space: Space, shares: Shares):
         self.structure = structure
         self.degree = degree
         self.n = measure.N
         self.whole = space == "symmetric"
         self.descending = space == "ordered"
-        self.equal_weight = nodes if equal else None
-        self.factor = math.lcm(*range(1, measure.N + 1)) * (nodes if equal else 1)
+        self.shares = shares
+        self.factor = math.lcm(*range(1, measure.N + 1)) * math.lcm(*(s.denominator for s in shares or ()))
         self.unknowns = [
-            (o, b) for o, orbit in enumerate(structure.orbits) for b in (*(() if equal else (-1,)), *orbit.free)
+            (o, b) for o, orbit in enumerate(structure.orbits) for b in (*(() if shares else (-1,)), *orbit.free)
         ]
 
     def point(self, x: Sequence[int], one: int) -> list[tuple[int, list[int]]]:
@@ -74,7 +75,7 @@ class System(ABC):
             values = [known.get((o, b), 0) for b in range(len(orbit.values))]
             rest = one - sum(orbit.multiplicities[b] * values[b] for b in orbit.free)
             values[orbit.dependent] = rest // orbit.multiplicities[orbit.dependent]
-            weight = known[o, -1] if self.equal_weight is None else one // self.equal_weight
+            weight = known[o, -1] if self.shares is None else int(self.shares[o] * one)
             result.append((weight, values))
         return result
 
@@ -107,7 +108,7 @@ class System(ABC):
         scale = int(one**self.degree)
         columns: list[list[int]] = []
         for orbit, (weight, values) in zip(self.structure.orbits, self.point(x, one), strict=True):
-            if self.equal_weight is None:
+            if self.shares is None:
                 columns.append([(g << bits) // scale for g in self._values(orbit, values, one)])
             if not orbit.free:
                 continue
@@ -157,13 +158,13 @@ class System(ABC):
 class PowerSumSystem(System):
     """The full group: products of power sums, at a cost that does not grow with the size of the orbits."""
 
-    def __init__(self, structure: Structure, measure: Measure, degree: int, space: Space, equal: bool, nodes: int):
-        super().__init__(structure, measure, degree, space, equal, nodes)
+    def __init__(self, structure: Structure, measure: Measure, degree: int, space: Space, shares: Shares):
+        super().__init__(structure, measure, degree, space, shares)
         self.powers = range(2, min(measure.N, degree) + 1)
         self.products = [
             powers
             for powers in _products(degree, self.powers)
-            if any(powers) or not equal  # equal weights sum to 1 by themselves
+            if any(powers) or not shares  # fixed weights sum to 1 by themselves
         ]
         route = measure.routes[-1]
         self.means = []
@@ -217,8 +218,8 @@ class PowerSumSystem(System):
 class MonomialSystem(System):
     """Any other group: monomials of degree t, one for each of its orbits."""
 
-    def __init__(self, structure: Structure, measure: Measure, degree: int, space: Space, equal: bool, nodes: int):
-        super().__init__(structure, measure, degree, space, equal, nodes)
+    def __init__(self, structure: Structure, measure: Measure, degree: int, space: Space, shares: Shares):
+        super().__init__(structure, measure, degree, space, shares)
         chosen: list[Exponents] = []
         seen: set[Exponents] = set()
         for a in compositions(degree, measure.N):
@@ -226,7 +227,7 @@ class MonomialSystem(System):
                 chosen.append(a)
                 seen.update(tuple(a[i] for i in g) for g in structure.permutations)
         # Σ w = 1 is a combination of all of them, so with weights that sum to 1 by themselves one is to spare.
-        self.exponents = chosen[:-1] if equal else chosen
+        self.exponents = chosen[:-1] if shares else chosen
         self.means = [mean(measure, a) for a in self.exponents]
 
     def _powers(self, values: Sequence[int]) -> list[list[int]]:

@@ -6,7 +6,7 @@ Each check takes exact integers and gives sentences, one for each thing that is 
 from __future__ import annotations
 
 from collections import Counter
-from collections.abc import Iterator
+from collections.abc import Iterator, Sequence
 from fractions import Fraction
 
 from simplexcub.errors import InputError
@@ -41,6 +41,27 @@ def weight_faults(printed: Printed, *, equal: bool) -> Iterator[str]:
         yield f"equal weights are claimed, but the printed ones differ by up to {spread}"
 
 
+def fixed_shares(rule: Rule, printed: Printed, places: Sequence[int]) -> tuple[Fraction, ...] | None:
+    """The exact weights of the nodes at `places` where equal or integer weights are claimed and printed, else None."""
+    if rule.equal_weights and len(set(printed.weights)) == 1:
+        return (Fraction(1, len(rule)),) * len(places)
+    if rule.integer_weights and not any(integer_faults(rule, printed)):
+        total = sum(rule.integer_weights)
+        return tuple(Fraction(rule.integer_weights[k], total) for k in places)
+    return None
+
+
+def integer_faults(rule: Rule, printed: Printed) -> Iterator[str]:
+    """Weights in proportion to the integers that are claimed, to the printed digits."""
+    total = sum(rule.integer_weights)
+    units = zip(rule.integer_weights, printed.weights, printed.weight_units, strict=False)
+    for k, (integer, weight, unit) in enumerate(units, 1):
+        off = abs(Fraction(integer, total) - Fraction(weight, printed.one))
+        if off * 10**printed.digits > Fraction(float(unit)):
+            yield f"weight {k} is claimed to be {integer}/{total}, but the printed one is off by {short(off)}"
+            return
+
+
 def node_faults(printed: Printed) -> Iterator[str]:
     """Every node on the closed simplex: coordinates ≥ 0, Σ λ_i = 1 to the printed digits."""
     faults = []
@@ -69,6 +90,7 @@ def claim_faults(rule: Rule, printed: Printed) -> Iterator[str]:
                 break
     if rule.space != "symmetric":
         yield from _symmetry_faults(rule, printed)
+    yield from integer_faults(rule, printed)
     if rule.orbits:
         yield from _orbit_faults(rule, printed)
 
