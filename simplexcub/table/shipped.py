@@ -159,8 +159,8 @@ def load(
     here = folder()
     fitting = [
         item
-        for item in _index(here)
-        if item.measure == record and item.space == space and symmetry in (None, item.symmetry)
+        for item in _index(here, record)
+        if item.space == space and symmetry in (None, item.symmetry)
         if item.kind.serves(equal_weights=equal_weights, also=wanted_also, embedded=embedded)
     ]
     enough = [item for item in fitting if item.degree >= degree]
@@ -271,12 +271,13 @@ def _order(line: Shipped) -> tuple[object, ...]:
     )
 
 
-def _index(where: Path) -> list[Shipped]:
+def _index(where: Path, measure: Mapping[str, Any] | None = None) -> list[Shipped]:
+    """The lines of the index, of one measure where it is given."""
     path = where / INDEX
     remedy = "Reinstall the package, or rebuild the index with: python -m simplexcub.table.build --index"
     try:
         record = json.loads(read_text(path))
-        return [Shipped(**line) for line in record["tables"]]
+        return [Shipped(**line) for line in record["tables"] if measure in (None, line["measure"])]
     except (ValueError, KeyError, TypeError) as error:
         raise TableError(f"{path} must be the index of the shipped tables", str(error), remedy) from None
 
