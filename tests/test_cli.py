@@ -14,6 +14,7 @@ from conftest import Call
 from simplexcub.cli import COMMANDS
 from simplexcub.measures import induced
 from simplexcub.table import FORMATS, catalogue
+from simplexcub.table.record import SPACES
 
 HS3 = ("hilbert-schmidt", "-N", "3")
 
@@ -175,7 +176,7 @@ def test_tables_can_be_narrowed_in_any_order(call: Call) -> None:
     degrees = [int(line.split()[4]) for line in out[1:] if line.split()[2] == "all" and "-full-t" in line]
     assert degrees == sorted(degrees)
     assert set(degrees) >= set(range(1, 15))
-    assert {tuple(line.split()[:3]) for line in out[1:]} == {("hilbert-schmidt", "3", "all")}
+    assert {tuple(line.split()[:3]) for line in out[1:]} == {("hilbert-schmidt", "3", s) for s in SPACES}
 
 
 def test_tables_show_efficiency_and_the_published_mark(call: Call) -> None:
@@ -191,7 +192,7 @@ def test_marks_without_symmetry_are_shown_beside_rules_without_it(call: Call, mo
     lines = [
         replace(item, symmetry="product-2-2", nodes=11)
         for item in catalogue("flat", N=4)
-        if (item.degree, item.symmetry, item.kind.told) == (4, "full", "")
+        if (item.degree, item.space, item.symmetry, item.kind.told) == (4, "all", "full", "")
     ]
     monkeypatch.setattr("simplexcub.cli.tables.catalogue", lambda *_, **__: lines)
     # Jaśkowiec & Sukumar, Int. J. Numer. Methods Eng. 121 (2020) 2418, from memory.

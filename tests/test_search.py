@@ -235,11 +235,11 @@ def test_digits_are_those_asked_for():
 
 def test_progress_tells_best_count_and_rate():
     seen = []
-    sc.solve(sc.flat(3), 4, progress=seen.append)
+    sc.solve(sc.flat(3), 7, progress=seen.append)
     assert all("nodes" in p.text and p.text.endswith(" tasks/s") for p in seen)
     assert [p.elapsed for p in seen] == sorted(p.elapsed for p in seen)
     assert seen[0].text.startswith("no rule yet")
-    assert seen[-1].text.startswith("best so far 6 nodes")
+    assert seen[-1].text.startswith("best so far 15 nodes")
 
 
 def test_budget_ends_the_search():
