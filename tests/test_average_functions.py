@@ -9,8 +9,7 @@ from fractions import Fraction
 import numpy as np
 import pytest
 
-from simplexcub.average.exact import exact_mean
-from simplexcub.average.functions import NAMES, spectral_function
+from simplexcub.average.functions import NAMES, exact_mean, spectral_function
 from simplexcub.errors import InputError
 from simplexcub.measures import dirichlet, flat, hilbert_schmidt, induced
 

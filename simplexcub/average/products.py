@@ -1,0 +1,102 @@
+"""Products of Gauss–Jacobi rules on a chart of the chamber or the simplex, with growing numbers of nodes per axis."""
+
+from __future__ import annotations
+
+from collections.abc import Iterator
+from functools import lru_cache
+from typing import Any
+
+import numpy as np
+from numpy.typing import NDArray
+from scipy.special import beta as beta_function
+
+from simplexcub.average.charts import Chamber, Chart, Density, Simplex, density_of
+from simplexcub.average.convergence import Rung
+from simplexcub.average.integrand import FloatArray, Integrand, Space, cost_of_orders, over_orders
+from simplexcub.measures import Measure
+
+# Nodes per axis, by the number of axes; more points than these are better spent on cells.
+SIZES: dict[int, tuple[int, ...]] = {
+    1: (5, 7, 9, 12, 16, 21, 28, 37, 49, 65, 86, 115, 153, 204),
+    2: (4, 5, 7, 9, 12, 16, 21, 28, 37, 49, 65),
+    3: (3, 4, 5, 7, 9, 11, 14, 17, 21, 26, 32, 40),
+    4: (3, 4, 5, 6, 8, 10, 12, 15, 18),
+    5: (3, 4, 5, 6, 7, 8, 10),
+}
+MOST_AXES = max(SIZES)
+_MASS_SIZES = {1: 60, 2: 48, 3: 32, 4: 18, 5: 12}
+ROUNDING = 8 * float(np.finfo(np.float64).eps)
+
+
+class Plan:
+    """Where and how a function of a measure is integrated: the chart, and whether f is averaged over all orders there.
+
+    Attributes
+    ----------
+    chart : Chart
+    orders : bool
+        f takes the components in their order, the chart is the chamber: f is averaged over all orders at each point.
+    cost : int
+        Evaluations per point.
+    name : str
+        Of the region: chamber or simplex.
+    """
+
+    def __init__(self, measure: Measure, density: Density, space: Space) -> None:
+        whole = not measure.is_symmetric or (space == "all" and density.has_smooth_differences)
+        self.chart: Chart = Simplex(density) if whole else Chamber(density)
+        self.orders = space == "all" and not whole
+        self.sort = space != "all" and whole
+        self.name = "simplex" if whole else "chamber"
+        self.cost = cost_of_orders(measure.N) if self.orders else 1
+
+    def values(self, integrand: Integrand, points: FloatArray) -> NDArray[Any]:
+        """f at points of the chart, shape (M, C)."""
+        if self.orders:
+            return over_orders(integrand, points)
+        return integrand(-np.sort(-points, axis=1) if self.sort else points)
+
+
+@lru_cache(maxsize=64)
+def plan(measure: Measure, space: Space) -> Plan | None:
+    """The plan for a measure and space; None where the density is not known or has too many axes."""
+    density = density_of(measure)
+    return None if density is None or measure.N - 1 > MOST_AXES else Plan(measure, density, space)
+
+
+@lru_cache(maxsize=64)
+def product_points(measure: Measure, space: Space, size: int) -> tuple[FloatArray, FloatArray]:
+    """Points and weights of one product; kept, since making them costs more than most functions."""
+    found = plan(measure, space)
+    assert found is not None
+    return found.chart.product((size,) * found.chart.axes)
+
+
+def product_value(measure: Measure, space: Space, integrand: Integrand, size: int) -> Rung | None:
+    """The value of f on the product with `size` nodes per axis; None where there is none or it costs too much."""
+    found = plan(measure, space)
+    if found is None or size**found.chart.axes * found.cost > integrand.left:
+        return None
+    points, weights = product_points(measure, space, size)
+    values = found.values(integrand, points)
+    return Rung(size, weights @ values, ROUNDING * (weights @ np.abs(values)))
+
+
+def products(measure: Measure, space: Space, integrand: Integrand) -> Iterator[Rung]:
+    """Values of f on products of rising size, as long as the evaluations last."""
+    for size in SIZES.get(measure.N - 1, ()):
+        rung = product_value(measure, space, integrand, size)
+        if rung is None:
+            return
+        yield rung
+
+
+@lru_cache(maxsize=64)
+def mass(measure: Measure, space: Space) -> float:
+    """∫ of the unnormalised density over the cube of the chart, by a product that is far finer than any in `SIZES`."""
+    found = plan(measure, space)
+    assert found is not None
+    chart = found.chart
+    return chart.mass(_MASS_SIZES[chart.axes]) * float(
+        np.prod([beta_function(a + 1, b + 1) for a, b in zip(chart.at_zero, chart.at_one, strict=True)])
+    )
