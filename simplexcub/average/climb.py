@@ -69,7 +69,13 @@ class Work:
         self.reason = self.reason or f"the budget of {self.integrand.limit} evaluations has ended"
 
     def _offer(self, value: NDArray[Any], error: NDArray[np.float64], how: str) -> bool:
-        """Keep the value unless a better one is there; say whether the tolerance is met."""
+        """Keep the value unless a better one is there; say whether the tolerance is met.
+
+        Where the two disagree by more than their errors, the error of the earlier one was too small and is corrected.
+        """
+        if self.best is not None and np.isfinite(error).all():
+            kept, kept_error, kept_how = self.best
+            self.best = kept, np.maximum(kept_error, np.abs(value - kept) - error), kept_how
         if self.best is None or not error.max() > self.best[1].max():
             self.best = value, error, how
         if self.progress is not None:
@@ -121,9 +127,13 @@ class Work:
             return False
         axes, allowed = found.chart.axes, self.integrand.left * PRODUCT_SHARE
         rungs: list[Rung] = []
+        climbed = self.best
         for rung in products(self.measure, self.space, self.integrand):
             rungs.append(rung)
             error = per_component(settling_error, rungs)
+            if climbed is not None:  # few nodes can all miss a feature, so each product checks the ladder anew
+                value, claimed, how = climbed
+                self.best = value, np.maximum(claimed, 2 * np.abs(value - rung.value)), how
             shape = " × ".join([str(rung.degree)] * axes)
             if self._offer(rung.value, error, f"product of {shape} nodes on the {found.name}"):
                 return True

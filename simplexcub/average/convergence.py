@@ -2,17 +2,17 @@
 
 Ladder (`estimated_error`). Let v_t be the value at degree t and δ_t = |v_t − v_s| / (t − s) the change per degree since
 the rung s before. Where δ_t falls like 1/t^q, what is missing after degree t is Σ_{r>t} δ_t (t/r)^q < δ_t t / (q − 1).
-The order q is the smallest one that neighbouring steps show, kept between 2, which is what a kink gives, and 4, so that
+The order q is the smallest one that neighbouring steps show, kept between 2, which is what a kink gives, and 8, so that
 no run of luck is extrapolated far. The last four steps all predict δ_t at that order, and the largest prediction
 counts: one accidental agreement between neighbours does not pass for convergence. The outcome is doubled, and the
 rounding of the sum added.
 
 Products (`settling_error`). Nodes per axis grow by a fifth to a half from rule to rule, and inside the cube the
 integrand is as smooth as f, so the changes Δ fall geometrically or faster. ρ is the slowest of the last three ratios of
-changes, kept above `FASTEST` and above what an error ∝ n^{−6} would show. The last changes, brought down by ρ as often
-as there were steps since, all predict the present one, and the largest Δ counts; what is missing is put at
-Δ ρ / (1 − ρ), doubled. Where ρ is above `STALLED` there is no such sum, and the error is ten times the larger of the
-last two changes.
+changes, kept above `FASTEST`. The last changes, brought down by ρ as often as there were steps since, all predict the
+present one, and the largest Δ counts; what is missing is put at Δ ρ / (1 − ρ), doubled, with a ρ there no smaller than
+an error ∝ n^{−6} would show. Where ρ is above `STALLED` there is no such sum, and the error is ten times the larger of
+the last two changes.
 
 These are estimates and no bounds: a function whose features fall between the points of every rule tried escapes them.
 """
@@ -27,7 +27,7 @@ from typing import Any, NamedTuple
 import numpy as np
 from numpy.typing import NDArray
 
-LOWEST_ORDER, HIGHEST_ORDER = 2.0, 4.0
+LOWEST_ORDER, HIGHEST_ORDER = 2.0, 8.0
 STEPS = 4
 FEWEST_STEPS = 3
 SAFETY = 2.0
@@ -56,7 +56,7 @@ def estimated_error(rungs: Sequence[Rung]) -> float:
     if len(rungs) <= FEWEST_STEPS:
         return math.inf
     changes = [
-        (after.degree, abs(after.value - before.value) / (after.degree - before.degree))
+        (after.degree, max(0.0, abs(after.value - before.value) - after.rounding) / (after.degree - before.degree))
         for before, after in pairwise(rungs[-STEPS - 1 :])
     ]
     seen = [_order(*earlier, *later) for earlier, later in pairwise(changes)]
@@ -72,7 +72,7 @@ def settling_error(rungs: Sequence[Rung]) -> float:
     Examples
     --------
     >>> rungs = [Rung(n, 1 + 0.1**n, 0.0) for n in (3, 4, 6, 8)]
-    >>> 1 <= settling_error(rungs) / 0.1**8 < 1000
+    >>> 0.1**8 <= settling_error(rungs) < 0.1**4
     True
     """
     if len(rungs) <= FEWEST_STEPS:
@@ -82,10 +82,11 @@ def settling_error(rungs: Sequence[Rung]) -> float:
     if max(changes[-2:]) <= rounding:
         return 4 * rounding
     rates = [b / a if a > 0 else 1.0 for a, b in pairwise(changes)]
-    rate = max(FASTEST, (rungs[-2].degree / rungs[-1].degree) ** ALGEBRAIC, *rates)
+    seen = max(FASTEST, *rates)
+    rate = max(seen, (rungs[-2].degree / rungs[-1].degree) ** ALGEBRAIC)
     if rate > STALLED:
         return 10 * max(changes[-2:]) + rounding
-    change = max(delta * rate**since for since, delta in enumerate(reversed(changes)))
+    change = max(delta * seen**since for since, delta in enumerate(reversed(changes)))
     return float(SAFETY * change * rate / (1 - rate) + rounding)
 
 

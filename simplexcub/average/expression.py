@@ -150,7 +150,7 @@ def parse_expression(text: str, measure: Measure) -> Expression:
             warnings.simplefilter("ignore")
             tree = ast.parse(text.lstrip(), mode="eval")
     except SyntaxError as error:
-        column = max((error.offset or 1) - 1, 0) + len(text) - len(text.lstrip())
+        column = (error.offset - 1 if error.offset else len(text)) + len(text) - len(text.lstrip())
         rule = "an expression must be complete and correctly bracketed"
         raise ExpressionError(rule, repr(text), f"See column {column + 1}.", text, min(column, len(text))) from None
     except (ValueError, RecursionError, MemoryError):

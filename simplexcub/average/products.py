@@ -93,7 +93,7 @@ def products(measure: Measure, space: Space, integrand: Integrand) -> Iterator[R
 
 @lru_cache(maxsize=64)
 def mass(measure: Measure, space: Space) -> float:
-    """∫ of the unnormalised density over the cube of the chart, by a product that is far finer than any in `SIZES`."""
+    """∫ of the chart's `full_density` over the cube, by a product that is finer than most in `SIZES`."""
     found = plan(measure, space)
     assert found is not None
     chart = found.chart

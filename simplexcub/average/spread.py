@@ -118,7 +118,7 @@ def distribution(
     --------
     >>> from simplexcub.measures import flat
     >>> found = distribution(lambda x: (x**2).sum(axis=1), flat(2))
-    >>> abs(found.variance[0] - 1 / 45) < found.variance_error[0] + 1e-12
+    >>> bool(abs(found.variance[0] - 1 / 45) < found.variance_error[0] + 1e-12)
     True
     """
     named = _named(functions)
