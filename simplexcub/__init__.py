@@ -42,6 +42,7 @@ _HOME = {
     "Mean": "average",
     "average": "average",
     "distribution": "average",
+    "exact_mean": "average",
     "lift": "average",
     "parse_expression": "average",
     "spectral_function": "average",

@@ -33,7 +33,7 @@ def test_page_entropy_beside_its_exact_value(call: Call) -> None:
 
 
 def test_an_expression_over_bures_agrees_with_samples(call: Call) -> None:
-    """10^5 seeded samples here, five standard errors; 10^7 in the benchmark of averages."""
+    """10^5 seeded samples here, five standard errors; 10^7 in tests/benchmarks/samples.py."""
     status, out, err = call("average", "bures", "-N", 3, "max(x)", "--tol", "1e-6")
     value, error = numbers(out)
     sampled = bures(3).sample(np.random.default_rng(11), 100_000).max(axis=1)

@@ -7,7 +7,7 @@ from types import ModuleType
 from typing import Any
 
 from simplexcub.average.expression import Expression, parse_expression
-from simplexcub.average.functions import SpectralFunction, spectral_function
+from simplexcub.average.functions import SpectralFunction, exact_mean, spectral_function
 from simplexcub.average.mean import Mean, average
 from simplexcub.average.spread import Distribution, distribution
 from simplexcub.average.states import StateRule, lift
@@ -20,6 +20,7 @@ __all__ = [
     "StateRule",
     "average",
     "distribution",
+    "exact_mean",
     "lift",
     "parse_expression",
     "spectral_function",
