@@ -14,6 +14,7 @@ from numpy.typing import NDArray
 
 import simplexcub
 from simplexcub.average.functions import spectral_function
+from simplexcub.average.ladder import _shipped, ladder
 from simplexcub.average.mean import average
 from simplexcub.errors import InputError, NothingFound
 from simplexcub.measures import (
@@ -325,6 +326,64 @@ def test_a_function_that_fails_later_leaves_the_best_value_and_the_reason() -> N
     assert "f returned nan at [" in found.reason
     # E|λ_1 − c| = 1/3 − c + 2 (…)⁺ part: 2 (1 − c)³/3 + c − 1/3
     assert abs(found.value - (2 * 0.6**3 / 3 + 0.4 - 1 / 3)) <= found.error < 0.2
+
+
+def test_an_interrupt_keeps_the_best_value() -> None:
+    calls = 0
+
+    def f(x: FloatArray) -> FloatArray:
+        nonlocal calls
+        calls += 1
+        if calls > 8:
+            raise KeyboardInterrupt
+        return np.asarray(np.abs(x[:, 0] - 0.4))
+
+    found = average(f, flat(3), tol=1e-12)
+    assert found.reason.endswith("interrupted")
+    assert abs(found.value - (2 * 0.6**3 / 3 + 0.4 - 1 / 3)) < 0.1
+    calls = 8
+    with pytest.raises(KeyboardInterrupt):
+        average(f, flat(3))
+
+
+def test_f_cannot_spoil_the_points_that_others_are_given() -> None:
+    def spoil(x: FloatArray) -> FloatArray:
+        x[:] = 0.5
+        return x[:, 0]
+
+    with pytest.raises(InputError, match="f must not raise; got ValueError"):
+        average(spoil, flat(2), space="symmetric")
+    assert average(spectral_function("largest"), flat(2)).value == pytest.approx(0.75)
+
+
+@pytest.mark.parametrize(
+    ("space", "asked"), [("symmetric", ["symmetric", "all"]), ("ordered", ["ordered"]), ("all", ["all"])]
+)
+def test_the_ladder_asks_for_the_cheapest_tables_that_serve(
+    space: str, asked: list[str], monkeypatch: pytest.MonkeyPatch
+) -> None:
+    spaces: list[str] = []
+
+    def nothing(measure: Measure, *, degree: int, space: str) -> None:
+        spaces.append(space)
+        raise NothingFound("table", "none", "Make one.")
+
+    monkeypatch.setattr("simplexcub.average.ladder.load", nothing)
+    _shipped.cache_clear()
+    assert list(ladder(induced(3, 9), space)) == []  # type: ignore[arg-type]
+    assert spaces == asked
+    _shipped.cache_clear()
+
+
+def test_a_symmetric_function_is_evaluated_once_per_orbit() -> None:
+    """The shipped rule of degree 8 for Hilbert–Schmidt at N = 3 has fewer orbits under all permutations than nodes."""
+    mu = hilbert_schmidt(3)
+    steps = {space: next(s for s in ladder(mu, space) if s.degree >= 8) for space in ("all", "symmetric")}  # type: ignore[arg-type]
+    assert len(steps["symmetric"].weights) < len(steps["all"].weights)
+    assert np.all(np.diff(steps["symmetric"].points, axis=1) <= 0)
+    for step in steps.values():
+        found = step.weights @ (step.points**4).sum(axis=1)
+        assert found == pytest.approx(float(hilbert_schmidt(3).power_sum_moment((4,))), rel=1e-13)
 
 
 def test_infinite_values_on_the_boundary_only_skip_the_rules_that_touch_it() -> None:

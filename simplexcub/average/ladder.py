@@ -90,6 +90,7 @@ def _prepared(rule: Rule, space: Space) -> Step:
         _, first, which = np.unique(np.round(ordered, 12), axis=0, return_index=True, return_inverse=True)
         weights = np.asarray(np.bincount(which.ravel(), weights=weights), dtype=np.float64)
         points = ordered[first]
+        points.flags.writeable = weights.flags.writeable = False
     return Step(rule.degree, points, weights, rule.provenance.method)
 
 

@@ -133,6 +133,10 @@ def average(
             remedy = "Allow more evaluations."
             raise stop.cause or NothingFound(f"mean over {measure}", stop.reason, remedy) from stop.__cause__
         reason = stop.reason
+    except KeyboardInterrupt:
+        if work.best is None:
+            raise
+        reason = "interrupted"
     assert work.best is not None
     value, error, how = work.best
     worst = float(error.max())

@@ -64,12 +64,14 @@ def plan(measure: Measure, space: Space) -> Plan | None:
     return None if density is None or measure.N - 1 > MOST_AXES else Plan(measure, density, space)
 
 
-@lru_cache(maxsize=64)
+@lru_cache(maxsize=24)
 def product_points(measure: Measure, space: Space, size: int) -> tuple[FloatArray, FloatArray]:
-    """Points and weights of one product; kept, since making them costs more than most functions."""
+    """Points and weights of one product, read-only; kept, since making them costs more than most functions."""
     found = plan(measure, space)
     assert found is not None
-    return found.chart.product((size,) * found.chart.axes)
+    points, weights = found.chart.product((size,) * found.chart.axes)
+    points.flags.writeable = weights.flags.writeable = False
+    return points, weights
 
 
 def product_value(measure: Measure, space: Space, integrand: Integrand, size: int) -> Rung | None:
