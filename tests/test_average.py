@@ -218,6 +218,21 @@ def test_sampling_is_seeded_and_covers_the_mean() -> None:
     assert abs(component.value - float(hilbert_schmidt(9).moment((2, *(0,) * 8)))) <= component.error <= 1e-3
 
 
+def test_sampling_where_f_does_not_care_for_an_order_that_the_measure_has() -> None:
+    """The control variates are those of the components as they stand, though f is given them sorted."""
+    measure = dirichlet([1, 2, 3, 4, 5, 6, 7])
+    found = average(spectral_function("von-neumann"), measure, tol=1e-3)
+    assert "samples" in found.how
+    assert abs(found.value - float(measure.entropy().value())) <= found.error <= 1e-3
+
+
+@pytest.mark.parametrize("alpha", [["1/10", 100, 3, 5], ["1/100", 1, 1], ["1/100", "1/100", "1/100"]])
+def test_steep_densities(alpha: list[int | str]) -> None:
+    measure = dirichlet(alpha)
+    found = average(spectral_function("von-neumann"), measure, tol=1e-6)
+    assert abs(found.value - float(measure.entropy().value())) <= found.error <= 1e-5
+
+
 def test_exact_moments_take_most_of_the_variance_away() -> None:
     """Plain sampling of the entropy needs (3 σ/error)² draws; with control variates it is under a hundredth."""
     entropy, mu = spectral_function("von-neumann"), hilbert_schmidt(8)

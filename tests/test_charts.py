@@ -104,7 +104,7 @@ def volume(measure: Measure, space: Space) -> float:
     """∫ of the density over λ, or barycentric b: the constant factors of dy/dt are left out of the chart's density."""
     found = plan(measure, space)
     assert found is not None
-    powers = found.chart.powers
+    powers = found.flat.powers
     slopes = {"chamber": powers, "simplex": [1 / beta(p, p) for p in powers]}
     return mass(measure, space) * math.prod(slopes[found.name])
 
@@ -119,6 +119,17 @@ def test_the_mass_is_the_volume_of_the_simplex(n: int) -> None:
 def test_the_mass_of_hilbert_schmidt_on_the_simplex_is_that_of_zyczkowski_and_sommers() -> None:
     """1/1680 for N = 3, the constant of the density (Życzkowski & Sommers 2001, eq. 4.1)."""
     assert volume(hilbert_schmidt(3), "all") == pytest.approx(1 / 1680, rel=1e-13)
+
+
+@pytest.mark.parametrize("kind", [Chamber, Simplex])
+def test_a_bounded_chart_has_a_bounded_density_for_every_exponent(kind: type[Chart]) -> None:
+    density = density_of(dirichlet(["1/10"] * 3))
+    assert density is not None
+    assert min(*kind(density).at_zero, *kind(density).at_one) < 0
+    chart = kind(density, bounded=True)
+    assert min(*chart.at_zero, *chart.at_one) >= 0
+    points, weights = chart.product((40, 40))
+    assert weights @ (points**2).sum(axis=1) == pytest.approx(float(dirichlet(["1/10"] * 3).power_sum_moment((2,))))
 
 
 def test_where_functions_of_each_space_are_integrated() -> None:

@@ -37,7 +37,9 @@ from simplexcub.measures import BetaEnsemble, BuresHall, Dirichlet, Induced, Mea
 
 FloatArray = NDArray[np.float64]
 STRONGEST = 4
+HIGHEST = 60  # power for a bounded density
 STEP = 2  # highest p on the simplex
+_NEAREST = 1e-17  # to a face, so that a point that rounding put onto it has a finite density
 ORDER = 6.0  # p (m + 1) at which a face counts as smooth enough without a power
 
 
@@ -73,6 +75,12 @@ def density_of(measure: Measure) -> Density | None:
 class Chart(ABC):
     """A map from the cube [0, 1]^{N−1} to points and the density there.
 
+    Parameters
+    ----------
+    density : Density
+    bounded : bool
+        Take powers so high that the density in t is bounded, for rules that have no weight of their own.
+
     Attributes
     ----------
     at_zero, at_one : tuple of float
@@ -81,7 +89,7 @@ class Chart(ABC):
         The p of each axis.
     """
 
-    def __init__(self, density: Density) -> None:
+    def __init__(self, density: Density, bounded: bool = False) -> None:
         self.density = density
         self.N = len(density.alpha)
         self.axes = self.N - 1
@@ -96,7 +104,8 @@ class Chart(ABC):
 
     def full_density(self, t: FloatArray, remainder: FloatArray) -> FloatArray:
         """The density in t itself, unnormalised."""
-        return np.asarray(remainder * np.prod(t ** np.array(self.at_zero) * (1 - t) ** np.array(self.at_one), axis=1))
+        low, high = np.maximum(t, _NEAREST), np.maximum(1 - t, _NEAREST)
+        return np.asarray(remainder * np.prod(low ** np.array(self.at_zero) * high ** np.array(self.at_one), axis=1))
 
     def product(self, sizes: tuple[int, ...]) -> tuple[FloatArray, FloatArray]:
         """Points and weights, summing to 1, of the product of Gauss–Jacobi rules with `sizes` nodes."""
@@ -121,13 +130,13 @@ class Chart(ABC):
 class Chamber(Chart):
     """The ordered chamber, largest component first, for symmetric densities."""
 
-    def __init__(self, density: Density) -> None:
+    def __init__(self, density: Density, bounded: bool = False) -> None:
         super().__init__(density)
         at_zero, powers = [], []
         for k in range(1, self.N):
             tail = self.N - k
             m = tail * density.alpha[0] + (density.beta - density.ratio) * tail * (tail - 1) / 2 - 1
-            p = _power(m)
+            p = _bounding(m) if bounded else _power(m)
             powers.append(p)
             at_zero.append(p * (m + 1) - 1)
         self.at_zero, self.powers = tuple(at_zero), tuple(powers)
@@ -165,7 +174,7 @@ class Chamber(Chart):
 class Simplex(Chart):
     """The whole simplex, components in their order, for densities whose differences are squared."""
 
-    def __init__(self, density: Density) -> None:
+    def __init__(self, density: Density, bounded: bool = False) -> None:
         super().__init__(density)
         at_zero, at_one, powers = [], [], []
         for k in range(1, self.N):
@@ -173,6 +182,8 @@ class Simplex(Chart):
             low = density.alpha[k - 1] - 1
             high = sum(density.alpha[k:]) + density.beta * tail * (tail - 1) / 2 - 1
             p = min(STEP, max(_power(low), _power(high)))
+            if bounded:
+                p = max(p, _bounding(min(low, high)))
             powers.append(p)
             at_zero.append(p * (high + 1) - 1)
             at_one.append(p * (low + 1) - 1)
@@ -197,6 +208,11 @@ class Simplex(Chart):
         if density.factor is not None:
             remainder *= density.factor.factor(points)
         return points, remainder
+
+
+def _bounding(m: float) -> int:
+    """The power of an axis whose density begins with y^m, at least so large that in t it begins with t^1."""
+    return min(HIGHEST, max(_power(m), math.ceil(2 / (m + 1))))
 
 
 def _power(m: float) -> int:

@@ -149,7 +149,7 @@ class Work:
         found = plan(self.measure, self.space)
         if found is None or self.best is None or self.reason:
             return False
-        chart, centre = found.chart, self.best[0]
+        chart, centre = found.flat, self.best[0]
         whole = mass(self.measure, self.space)
         spent = self.integrand.evaluations
         allowed = int(self.integrand.left * (CELL_SHARE if chart.axes > 1 else 1.0))

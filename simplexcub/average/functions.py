@@ -38,6 +38,7 @@ import re
 from collections.abc import Callable
 from dataclasses import dataclass, replace
 from fractions import Fraction
+from functools import lru_cache
 from typing import Literal
 
 import numpy as np
@@ -229,8 +230,14 @@ def exact_mean(f: object, measure: Measure) -> Exact | None:
     """
     if not isinstance(f, SpectralFunction) or f.mean is None or f.least > measure.N:
         return None
+    return _closed(f.mean, measure)
+
+
+@lru_cache(maxsize=256)
+def _closed(mean: Closed, measure: Measure) -> Exact | None:
+    """Kept, since the closed form takes longer than the numerical mean."""
     try:
-        return f.mean(measure)
+        return mean(measure)
     except InputError:  # a measure without such a formula, or a degree beyond its reach
         return None
 

@@ -33,7 +33,8 @@ class Plan:
 
     Attributes
     ----------
-    chart : Chart
+    chart, flat : Chart
+        For products of rules with the density's powers as weight, and for cells with flat rules.
     orders : bool
         f takes the components in their order, the chart is the chamber: f is averaged over all orders at each point.
     cost : int
@@ -44,7 +45,9 @@ class Plan:
 
     def __init__(self, measure: Measure, density: Density, space: Space) -> None:
         whole = not measure.is_symmetric or (space == "all" and density.has_smooth_differences)
-        self.chart: Chart = Simplex(density) if whole else Chamber(density)
+        kind = Simplex if whole else Chamber
+        self.chart: Chart = kind(density)
+        self.flat: Chart = kind(density, bounded=True)
         self.orders = space == "all" and not whole
         self.sort = space != "all" and whole
         self.name = "simplex" if whole else "chamber"
@@ -95,10 +98,10 @@ def products(measure: Measure, space: Space, integrand: Integrand) -> Iterator[R
 
 @lru_cache(maxsize=64)
 def mass(measure: Measure, space: Space) -> float:
-    """∫ of the chart's `full_density` over the cube, by a product that is finer than most in `SIZES`."""
+    """∫ of `full_density` of the chart for cells, by a product that is finer than most in `SIZES`."""
     found = plan(measure, space)
     assert found is not None
-    chart = found.chart
+    chart = found.flat
     return chart.mass(_MASS_SIZES[chart.axes]) * float(
         np.prod([beta_function(a + 1, b + 1) for a, b in zip(chart.at_zero, chart.at_one, strict=True)])
     )

@@ -62,11 +62,12 @@ def sampled_mean(
 
     def draw(count: int) -> tuple[NDArray[Any], FloatArray]:
         points = measure.sample(rng, count)
+        known = features(points)
         if space != "all":
             points = -np.sort(-points, axis=1)
         elif measure.is_symmetric:  # samplers give eigenvalues sorted
             points = rng.permuted(points, axis=1)
-        return integrand(points), features(points)
+        return integrand(points), known
 
     values, known = draw(first)
     coefficients, *_ = np.linalg.lstsq(np.column_stack([np.ones(first), known]), values, rcond=None)
