@@ -226,11 +226,18 @@ def test_sampling_where_f_does_not_care_for_an_order_that_the_measure_has() -> N
     assert abs(found.value - float(measure.entropy().value())) <= found.error <= 1e-3
 
 
-@pytest.mark.parametrize("alpha", [["1/10", 100, 3, 5], ["1/100", 1, 1], ["1/100", "1/100", "1/100"]])
+@pytest.mark.parametrize("alpha", [["1/10", 100, 3, 5], ["1/100", 1, 1], ["1/100"] * 3, [500] * 3])
 def test_steep_densities(alpha: list[int | str]) -> None:
     measure = dirichlet(alpha)
     found = average(spectral_function("von-neumann"), measure, tol=1e-6)
-    assert abs(found.value - float(measure.entropy().value())) <= found.error <= 1e-5
+    assert abs(found.value - float(measure.entropy().value())) <= found.error <= 1e-4
+
+
+def test_the_density_must_be_resolved_before_products_are_believed() -> None:
+    """Over induced measures with K = 2000 spectra crowd at 1/N, where few nodes see a smooth f agree by accident."""
+    measure = induced(4, 2000)
+    found = average(spectral_function("von-neumann"), measure, tol=1e-3, max_evaluations=2000)
+    assert abs(found.value - float(measure.entropy().value())) <= found.error
 
 
 def test_exact_moments_take_most_of_the_variance_away() -> None:

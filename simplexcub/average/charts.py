@@ -31,7 +31,8 @@ from itertools import combinations
 
 import numpy as np
 from numpy.typing import NDArray
-from scipy.special import roots_jacobi
+from scipy.linalg import eigh_tridiagonal
+from scipy.special import betaln, logsumexp
 
 from simplexcub.measures import BetaEnsemble, BuresHall, Dirichlet, Induced, Measure, Ordered, PolynomialDensity
 
@@ -100,31 +101,37 @@ class Chart(ABC):
 
     @abstractmethod
     def points(self, t: FloatArray) -> tuple[FloatArray, FloatArray]:
-        """Points λ, shape (M, N), and the density in t without its powers of t and 1 − t, shape (M,)."""
+        """Points λ, shape (M, N), and the logarithm of the density in t without its powers of t and 1 − t, (M,)."""
 
-    def full_density(self, t: FloatArray, remainder: FloatArray) -> FloatArray:
-        """The density in t itself, unnormalised."""
-        low, high = np.maximum(t, _NEAREST), np.maximum(1 - t, _NEAREST)
-        return np.asarray(remainder * np.prod(low ** np.array(self.at_zero) * high ** np.array(self.at_one), axis=1))
+    @property
+    def is_bounded(self) -> bool:
+        """Whether the density in t is."""
+        return min(*self.at_zero, *self.at_one) >= 0
+
+    def log_density(self, t: FloatArray, remainder: FloatArray) -> FloatArray:
+        """Logarithm of the density in t, with its powers of t and 1 − t as probability densities."""
+        low, high = np.log(np.maximum(t, _NEAREST)), np.log(np.maximum(1 - t, _NEAREST))
+        a, b = np.array(self.at_zero), np.array(self.at_one)
+        return np.asarray(remainder + (low * a + high * b - betaln(a + 1, b + 1)).sum(axis=1))
 
     def product(self, sizes: tuple[int, ...]) -> tuple[FloatArray, FloatArray]:
         """Points and weights, summing to 1, of the product of Gauss–Jacobi rules with `sizes` nodes."""
-        points, weights = self._product(sizes)
+        points, logs = self._product(sizes)
+        weights = np.exp(logs - logs.max())
         return points, weights / weights.sum()
 
-    def mass(self, size: int) -> float:
-        """∫ of the density over the cube, by such a product of `size` nodes per axis, the powers of t and 1 − t taken
-        as probability densities."""
-        return float(self._product((size,) * self.axes)[1].sum())
+    def log_mass(self, size: int) -> float:
+        """Logarithm of ∫ of the density over the cube, by such a product of `size` nodes per axis."""
+        return float(logsumexp(self._product((size,) * self.axes)[1]))
 
     def _product(self, sizes: tuple[int, ...]) -> tuple[FloatArray, FloatArray]:
-        axes = [_jacobi(n, b, a) for n, a, b in zip(sizes, self.at_zero, self.at_one, strict=True)]
+        axes = [_jacobi(n, a, b) for n, a, b in zip(sizes, self.at_zero, self.at_one, strict=True)]
         grids = np.meshgrid(*(x for x, _ in axes), indexing="ij")
-        weights = np.ones(())
+        logs = np.zeros(())
         for _, w in axes:
-            weights = np.multiply.outer(weights, w)
+            logs = np.add.outer(logs, _log(w))
         points, remainder = self.points(np.stack([g.ravel() for g in grids], axis=1))
-        return points, weights.ravel() * remainder
+        return points, logs.ravel() + remainder
 
 
 class Chamber(Chart):
@@ -154,20 +161,20 @@ class Chamber(Chart):
         for i in range(n - 2, -1, -1):
             g[i] = short[i] + y[:, i] * g[i + 1]
         points = s * g.T
-        remainder = np.prod(g, axis=0) ** (density.alpha[0] - 1)
+        remainder = (density.alpha[0] - 1) * np.log(g).sum(axis=0)
         if density.beta:
             for k in range(self.axes):
-                remainder *= slope[k] ** density.beta
+                remainder += density.beta * np.log(slope[k])
             for j in range(2, n):
                 h = short[j - 1]
                 for i in range(j - 2, -1, -1):
                     h = short[i] + y[:, i] * h
-                    remainder *= h**density.beta
+                    remainder += density.beta * _log(h)
         if density.ratio:
             for i, j in combinations(range(n), 2):
-                remainder /= g[i] + np.prod(y[:, i:j], axis=1) * g[j]
+                remainder -= np.log(g[i] + np.prod(y[:, i:j], axis=1) * g[j])
         if density.factor is not None:
-            remainder *= density.factor.factor(points)
+            remainder += _log(density.factor.factor(points))
         return points, remainder
 
 
@@ -191,7 +198,7 @@ class Simplex(Chart):
 
     def points(self, t: FloatArray) -> tuple[FloatArray, FloatArray]:
         n, density = self.N, self.density
-        remainder = np.ones(len(t))
+        remainder = np.zeros(len(t))
         rest, s = [], [np.ones(len(t))]
         for k, p in enumerate(self.powers):
             u = 1 - t[:, k]
@@ -200,13 +207,13 @@ class Simplex(Chart):
             s.append(s[-1] * t[:, k] ** p * up)
             tail = n - 1 - k
             high = sum(density.alpha[k + 1 :]) + density.beta * tail * (tail - 1) / 2 - 1
-            remainder *= up**high * down ** (density.alpha[k] - 1)
+            remainder += high * np.log(up) + (density.alpha[k] - 1) * np.log(down)
         points = np.stack([*(a * b for a, b in zip(s, rest, strict=False)), s[-1]], axis=1)
         if density.beta:
             for i, j in combinations(range(n), 2):
-                remainder *= np.abs(rest[i] - points[:, j] / s[i]) ** density.beta
+                remainder += density.beta * _log(np.abs(rest[i] - points[:, j] / s[i]))
         if density.factor is not None:
-            remainder *= density.factor.factor(points)
+            remainder += _log(density.factor.factor(points))
         return points, remainder
 
 
@@ -220,7 +227,25 @@ def _power(m: float) -> int:
     return min(STRONGEST, max(1, math.ceil(ORDER / (m + 1))))
 
 
+def _log(values: FloatArray) -> FloatArray:
+    """The logarithm, −inf where a density or a weight vanishes."""
+    with np.errstate(divide="ignore"):
+        return np.asarray(np.log(np.maximum(values, 0.0)))
+
+
 @lru_cache(maxsize=512)
-def _jacobi(n: int, at_one: float, at_zero: float) -> tuple[FloatArray, FloatArray]:
-    x, w = roots_jacobi(n, at_one, at_zero)
-    return (x + 1) / 2, w / w.sum()
+def _jacobi(n: int, a: float, b: float) -> tuple[FloatArray, FloatArray]:
+    """Gauss rule for the weight t^a (1 − t)^b on [0, 1], weights summing to 1, for exponents of any size.
+
+    Nodes are eigenvalues of the Jacobi matrix, weights squared first components (Golub & Welsch 1969); the recurrence
+    is Abramowitz & Stegun 22.7.1.
+    """
+    k = np.arange(1, n, dtype=np.float64)
+    whole = 2 * k + a + b
+    diagonal = np.empty(n)
+    diagonal[0] = (a - b) / (a + b + 2)
+    diagonal[1:] = (a * a - b * b) / (whole * (whole + 2))
+    factor = np.append(1.0, (k[1:] + a + b) / (whole[1:] - 1))[: n - 1]  # at k = 1 it is 1, or 0/0
+    squares = 4 * k * (k + a) * (k + b) * factor / (whole**2 * (whole + 1))
+    nodes, vectors = eigh_tridiagonal(diagonal, np.sqrt(squares))
+    return (nodes + 1) / 2, np.asarray(vectors[0] ** 2)

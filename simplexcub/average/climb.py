@@ -1,7 +1,8 @@
 """One mean under way: four ways of finding it, each begun where the one before stops making headway.
 
 1. The ladder of shipped rules, while it can be expected to settle; a product with other nodes checks the outcome.
-2. Products on the chart, until they stall or have had their share of the evaluations.
+2. Products on the chart, until they stall or have had their share of the evaluations. What they miss of the purity,
+   whose mean is known exactly, is added to their error: a steep density may need more nodes than f.
 3. Cells of the chart, around the best value so far.
 4. Sampling.
 """
@@ -28,7 +29,7 @@ from simplexcub.average.convergence import (
 )
 from simplexcub.average.integrand import Integrand, Space, Stopped
 from simplexcub.average.ladder import ladder
-from simplexcub.average.products import ROUNDING, mass, plan, product_value, products
+from simplexcub.average.products import ROUNDING, log_mass, plan, product_value, products, resolution
 from simplexcub.average.sampling import sampled_mean
 from simplexcub.measures import Measure
 from simplexcub.search import Progress
@@ -130,7 +131,8 @@ class Work:
         climbed = self.best
         for rung in products(self.measure, self.space, self.integrand):
             rungs.append(rung)
-            error = per_component(settling_error, rungs)
+            unresolved = 2 * resolution(self.measure, self.space, rung.degree) * rung.rounding / ROUNDING
+            error = per_component(settling_error, rungs) + unresolved
             if climbed is not None:  # few nodes can all miss a feature, so each product checks the ladder anew
                 value, claimed, how = climbed
                 self.best = value, np.maximum(claimed, 2 * np.abs(value - rung.value)), how
@@ -150,14 +152,18 @@ class Work:
         if found is None or self.best is None or self.reason:
             return False
         chart, centre = found.flat, self.best[0]
-        whole = mass(self.measure, self.space)
+        if not chart.is_bounded:  # flat rules would understate their error at the singularity
+            return False
+        whole = log_mass(self.measure, self.space)
+        if whole is None:
+            return False
         spent = self.integrand.evaluations
         allowed = int(self.integrand.left * (CELL_SHARE if chart.axes > 1 else 1.0))
 
         def values(t: NDArray[np.float64]) -> NDArray[Any]:
             points, remainder = chart.points(t)
             table = found.values(self.integrand, points) - centre
-            return np.asarray(table * (chart.full_density(t, remainder) / whole)[:, None])
+            return np.asarray(table * np.exp(chart.log_density(t, remainder) - whole)[:, None])
 
         def left() -> int:
             return (allowed - (self.integrand.evaluations - spent)) // found.cost
