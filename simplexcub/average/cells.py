@@ -28,6 +28,7 @@ Values = Callable[[FloatArray], NDArray[Any]]
 SHARE = 0.7  # of the error that one generation is to halve
 MOST_CELLS = 4096  # halved at once
 SAFETY = 2.0
+CONFIRMATIONS = 1  # generations more once the error is small enough, lest two rules agreed by accident
 ROUGH = 0.1  # change by halving over difference of the rules, above which a cell is not smooth
 FIRST_CUTS = {1: 4, 2: 3, 3: 2}
 
@@ -151,12 +152,14 @@ def subdivide(
     middles = (np.arange(cuts) + 0.5) / cuts
     centres = np.stack([g.ravel() for g in np.meshgrid(*[middles] * d, indexing="ij")], axis=1)
     cells = _evaluated(values, centres, np.full(centres.shape, 0.5 / cuts))
+    within = 0
     while True:
         errors = cells.errors.sum(axis=0)
         worst = float(errors.max())
         report(len(cells.axes), worst)
         affordable = points_left() // (2 * len(rule.fine))
-        if worst <= tol or affordable < 1:
+        within = within + 1 if worst <= tol else 0
+        if within > CONFIRMATIONS or affordable < 1:
             return Cut(cells.values.sum(axis=0), errors, len(cells.axes))
         shares = (cells.errors / np.where(errors > 0, errors, 1.0)).max(axis=1)
         order = np.argsort(-shares)

@@ -118,7 +118,7 @@ class Work:
         size = CHECK_SIZES.get(self.measure.N - 1)
         other = None if size is None else product_value(self.measure, self.space, self.integrand, size)
         if other is not None:
-            error = np.maximum(error, 2 * np.abs(value - other.value) - other.rounding)
+            error = np.maximum(error, 4 * np.abs(value - other.value) - other.rounding)
             how = f"{how}, checked by a product"
         return self._offer(value, error, how)
 
