@@ -11,7 +11,7 @@ weight          sums to 1 over the rule; arrays have shape ``(M,)``
 E[·]            always a mean: every measure has total mass 1
 degree          largest total degree of the polynomials that a rule averages exactly
 orbit           all different permutations of one node; its weight is shared equally among them
-logarithm       natural; entropies are in nats
+logarithm       natural; entropies are in nats unless bits are asked for
 ==============  ==============================================================================================
 """
 
@@ -45,6 +45,13 @@ _HOME = {
     "solve": "search",
     "verify": "verify",
     "draw": "picture",
+    "Mean": "average",
+    "average": "average",
+    "distribution": "average",
+    "exact_mean": "average",
+    "lift": "average",
+    "parse_expression": "average",
+    "spectral_function": "average",
     "load": "table",
     "read": "table",
     "save": "table",

@@ -1,32 +1,30 @@
-"""The mean of any function, by climbing a ladder of rules of rising degree until the estimated error is small enough.
+"""The mean of any function, to a tolerance, with an estimate of its error.
 
-The estimate is that of `simplexcub.average.convergence`.
+Four ways, each begun where the one before stops making headway:
+
+1. the ladder of shipped rules (Gauss rules for N = 2), `simplexcub.average.ladder`;
+2. products of Gauss–Jacobi rules on the chamber, or the simplex, up to N = 6, `simplexcub.average.products`;
+3. adaptive subdivision there, `simplexcub.average.cells`;
+4. sampling with exact moments as control variates, `simplexcub.average.sampling`, the only way for N ≥ 7.
 """
 
 from __future__ import annotations
 
 import math
-import time
-from collections.abc import Callable, Iterator
+from collections.abc import Callable
 from dataclasses import dataclass
-from fractions import Fraction
-from typing import Any
+from typing import Any, Literal
 
-import numpy as np
-from numpy.typing import NDArray
-
-from simplexcub.average.convergence import STEPS, Rung, estimated_error
-from simplexcub.average.exact import exact_mean
+from simplexcub.average.climb import Work
+from simplexcub.average.exact import Exact
+from simplexcub.average.functions import SpectralFunction, exact_mean
+from simplexcub.average.integrand import SPACES, Function, Integrand, Space, Stopped
 from simplexcub.errors import InputError, NothingFound
-from simplexcub.measures import Measure
-from simplexcub.rule import Rule
-from simplexcub.search import Progress, product_rule, solve
-from simplexcub.table import load
+from simplexcub.measures import Measure, Ordered
+from simplexcub.search import Progress
 
-PRODUCT_DEGREES = (1, 3, 5, 7, 11, 15, 23, 31, 47, 63, 95, 127, 191, 255)
-SEARCHED_DEGREES = (1, 2, 3, 4)
-SEARCHED_N = range(5, 8)  # below, products are cheap; above, listing the structures alone outlasts any budget
-DIGITS = 30  # twice what float64 holds, since weights with a density in them are small before they are normalised
+MAX_EVALUATIONS = 1_000_000
+_FEW = 64  # evaluations below which none goes into finding out whether f is symmetric
 
 
 @dataclass(frozen=True)
@@ -35,62 +33,82 @@ class Mean:
 
     Attributes
     ----------
-    value : float
-    error : float
-        Estimated bound on |value − E[f]|; 0 where the mean is exact, inf where too few rules were there to tell.
+    value : float, complex or ndarray
+        Of the shape of one value of f.
+    error : float or ndarray
+        Estimated bound on |value − E[f]|, component by component; 0 where the mean is exact, inf where there was too
+        little to tell.
     evaluations : int
         Points at which f was evaluated.
     how : str
         What produced the value.
-    exact : Fraction or None
-        The mean itself, where the moments give it.
+    exact : Exact or None
+        The mean in closed form, where f is a named function and the moments give it.
+    reason : str
+        Why the tolerance was not met; empty where it was.
     """
 
-    value: float
-    error: float
+    value: Any
+    error: Any
     evaluations: int
     how: str
-    exact: Fraction | None = None
+    exact: Exact | None = None
+    reason: str = ""
+
+    @property
+    def met(self) -> bool:
+        """Whether the estimated error is within the tolerance."""
+        return not self.reason
 
 
 def average(
-    f: Callable[[NDArray[np.float64]], Any],
+    f: Function,
     measure: Measure,
     *,
-    tol: float = 1e-6,
-    budget: float = 60.0,
+    tol: float = 1e-8,
+    space: Literal["auto", "all", "symmetric", "ordered"] = "auto",
+    max_evaluations: int = MAX_EVALUATIONS,
+    budget: float = 0.0,
+    seed: int = 0,
     progress: Callable[[Progress], None] | None = None,
 ) -> Mean:
-    """The mean E[f], with an estimate of its error.
+    """The mean E[f] to a tolerance, with an estimate of its error.
 
-    Polynomials among the named functions are averaged exactly. For N = 2 the ladder consists of Gauss rules. For
-    N ≥ 3 it is the rules that come with the package, then conical products, which cost more points but no search. For
-    large N a few rules of low degree are searched, since products have thousands of points there.
+    Named functions that are polynomials are averaged exactly, without evaluations.
 
     Parameters
     ----------
     f : callable
-        Takes points, shape (M, N), and returns real values, shape (M,). See also
+        Takes points, shape (M, N), and returns real or complex values, shape (M,) or (M, …). See also
         :func:`simplexcub.average.functions.spectral_function`.
     measure : Measure
     tol : float
-        Absolute tolerance; the climb ends as soon as the estimated error is no larger.
+        Absolute tolerance, for every component of f; the work ends as soon as the estimated error is no larger.
+    space : {"auto", "all", "symmetric", "ordered"}
+        ``all`` gives f the components in their order, ``ordered`` the largest first; ``symmetric`` promises that the
+        order does not matter to f. ``auto`` tries f on some points and their permutations, and takes ``symmetric`` or
+        ``all``; named functions and the ordered measures know their own.
+    max_evaluations : int
+        Most points at which f is evaluated.
     budget : float
-        Seconds after which no further rule is made.
+        Seconds in which rules may be searched where none is shipped; 0 searches none. Worth it where f is so slow that
+        a rule of few nodes is wanted.
+    seed : int
+        Of the samples, where it comes to sampling.
     progress : callable, optional
-        Called with a :class:`simplexcub.search.Progress` before each rule.
+        Called with a :class:`simplexcub.search.Progress` after each rule or generation of cells.
 
     Returns
     -------
     Mean
-        With the best value there is, also where its error exceeds `tol`.
+        With the best value there is, also where its error exceeds `tol`; then ``reason`` says why.
 
     Raises
     ------
     InputError
-        `tol` is not positive; `f` returned another shape or a value that is not finite.
+        A parameter out of range; f returned another shape, or had no finite value before anything was found.
     NothingFound
-        No rule at all could be had for the measure.
+        The evaluations ended before anything was found.
 
     Examples
     --------
@@ -99,94 +117,62 @@ def average(
     >>> abs(mean.value - 1 / 5) < 1e-15
     True
     """
-    if not 0 < tol < math.inf:
-        raise InputError("tol must be a positive number", tol)
+    _check(measure, tol=tol, space=space, max_evaluations=max_evaluations, budget=budget, seed=seed)
     exact = exact_mean(f, measure)
-    if exact is not None:
-        return Mean(float(exact), 0.0, 0, "exact moments", exact)
-    rungs: list[Rung] = []
-    evaluations, how = 0, ""
-    for rule in _ladder(measure, _Clock(budget, progress)):
-        rungs.append(_evaluate(f, rule))
-        evaluations += len(rule)
-        how = f"{len(rungs)} rules of degree {rungs[0].degree} to {rule.degree}, the last by {rule.provenance.method}"
-        if len(rungs) > STEPS and estimated_error(rungs) <= tol:
-            break
-    if not rungs:
-        remedy = "Average f over points drawn by measure.sample instead."
-        raise NothingFound(f"rule for {measure}", "N is too large for products and for the search", remedy)
-    return Mean(rungs[-1].value, estimated_error(rungs), evaluations, how)
+    if exact is not None and isinstance(f, SpectralFunction) and f.is_polynomial and space in ("auto", f.space):
+        return Mean(float(exact.value), 0.0, 0, "exact moments", exact)
+    base = measure.base if isinstance(measure, Ordered) else measure
+    integrand = Integrand(f, measure.N, max_evaluations)
+    work = Work(integrand, base, tol, budget, seed, progress)
+    reason = ""
+    try:
+        work.space = _space(integrand, f, measure, space)
+        work.run()
+    except Stopped as stop:
+        if work.best is None:
+            remedy = "Allow more evaluations."
+            raise stop.cause or NothingFound(f"mean over {measure}", stop.reason, remedy) from stop.__cause__
+        reason = stop.reason
+    except KeyboardInterrupt:
+        if work.best is None:
+            raise
+        reason = "interrupted"
+    assert work.best is not None
+    value, error, how = work.best
+    worst = float(error.max())
+    missed = f"tolerance {tol:g} was not met, the estimated error is {worst:.1e}: {reason or work.reason}"
+    return Mean(
+        integrand.shaped(value),
+        integrand.shaped(error),
+        integrand.evaluations,
+        how,
+        exact,
+        "" if worst <= tol else missed,
+    )
 
 
-class _Clock:
-    """What is left of the budget, and the way to tell the caller what is going on."""
-
-    def __init__(self, budget: float, progress: Callable[[Progress], None] | None) -> None:
-        self._start = time.monotonic()
-        self._budget = budget
-        self.progress = progress
-
-    @property
-    def left(self) -> float:
-        return self._start + self._budget - time.monotonic()
-
-    def say(self, text: str) -> None:
-        if self.progress is not None:
-            self.progress(Progress(text, self._budget - self.left))
+def _space(integrand: Integrand, f: Function, measure: Measure, asked: str) -> Space:
+    if asked != "auto":
+        return asked  # type: ignore[return-value]
+    own = getattr(f, "space", None)
+    if isinstance(measure, Ordered):
+        return "symmetric" if own == "symmetric" else "ordered"
+    if own in SPACES:
+        return own  # type: ignore[no-any-return]
+    if integrand.limit < _FEW or not measure.is_symmetric:
+        return "all"
+    return "symmetric" if integrand.is_symmetric() else "all"
 
 
-def _evaluate(f: Callable[[NDArray[np.float64]], Any], rule: Rule) -> Rung:
-    values = np.asarray(f(rule.nodes))
-    if values.shape != (len(rule),) or not np.isrealobj(values):
-        remedy = "f receives all points at once, shape (M, N); reduce over the last axis."
-        raise InputError("f must return one real value per point", f"shape {values.shape}, {values.dtype}", remedy)
-    if not np.all(np.isfinite(values)):
-        k = int(np.argmin(np.isfinite(values)))
-        raise InputError("f must be finite at every point", f"{values[k]} at {rule.nodes[k].tolist()}")
-    size = float(rule.weights @ np.abs(values))
-    return Rung(rule.degree, float(rule.weights @ values), 8 * float(np.finfo(np.float64).eps) * size)
-
-
-def _ladder(measure: Measure, clock: _Clock) -> Iterator[Rule]:
-    """Rules of strictly rising degree."""
-    highest = 0
-    for source in (_shipped, _searched, _products):
-        for rule in source(measure, highest, clock):
-            highest = rule.degree
-            yield rule
-            if clock.left <= 0:
-                return
-
-
-def _shipped(measure: Measure, above: int, clock: _Clock) -> Iterator[Rule]:
-    if measure.N == 2:
-        return  # Gauss rules of any degree cost nothing, and doubling degrees say more about convergence
-    while True:
-        clock.say(f"shipped rule above degree {above}")
-        try:
-            rule = load(measure, degree=above + 1)
-        except NothingFound:
-            return
-        above = rule.degree
-        yield rule
-
-
-def _products(measure: Measure, above: int, clock: _Clock) -> Iterator[Rule]:
-    for degree in PRODUCT_DEGREES:
-        if degree > above:
-            clock.say(f"product rule of degree {degree}")
-            try:
-                yield product_rule(measure, degree, digits=DIGITS)
-            except NothingFound:
-                return
-
-
-def _searched(measure: Measure, above: int, clock: _Clock) -> Iterator[Rule]:
-    if measure.N not in SEARCHED_N:
-        return
-    for degree in SEARCHED_DEGREES:
-        if degree > above:
-            try:
-                yield solve(measure, degree, digits=DIGITS, budget=clock.left / 4, progress=clock.progress)
-            except NothingFound:
-                return
+def _check(measure: object, *, tol: float, space: str, max_evaluations: int, budget: float, seed: int) -> None:
+    if not isinstance(measure, Measure):
+        raise InputError("measure must be a measure such as flat(3)", repr(measure))
+    if isinstance(tol, bool) or not isinstance(tol, int | float) or not 0 < tol < math.inf:
+        raise InputError("tol must be a positive number", tol)
+    if space not in ("auto", *SPACES):
+        raise InputError(f"space must be one of auto, {', '.join(SPACES)}", space)
+    if not budget >= 0:
+        raise InputError("budget must be a number of seconds, at least 0", budget)
+    for name, value, least in (("max_evaluations", max_evaluations, 1), ("seed", seed, 0)):
+        if isinstance(value, bool) or not isinstance(value, int) or value < least:
+            raise InputError(f"{name} must be an integer of at least {least}", value)

@@ -21,3 +21,8 @@ def tolerate_narrow_encodings() -> None:
     for stream in (sys.stdout, sys.stderr):
         if isinstance(stream, io.TextIOWrapper):
             stream.reconfigure(errors="backslashreplace")
+
+
+def show_place(text: str, caret: str) -> None:
+    """Show `text` on standard error, and below it the line that points at a place in it."""
+    print(f"  {text}\n  {caret}", file=sys.stderr)

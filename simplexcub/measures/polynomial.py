@@ -118,6 +118,10 @@ class PolynomialDensity(Measure):
         plain_scale, tex_scale = ("", "") if scale == 1 else (f"{scale} ", rf"{scale}\,")
         return f"{plain_scale}({text}) · {base}", rf"{tex_scale}\left({tex}\right){tex_base}"
 
+    def factor(self, points: FloatArray) -> FloatArray:
+        """p at points of shape ``(M, N)``; shape ``(M,)``."""
+        return _values(self.terms, points)
+
     def sample(self, rng: np.random.Generator, size: int) -> FloatArray:
         """Rejection from the Dirichlet measure, under the bound Σ |coefficient| · max of each monomial."""
         size = sample_size(size)

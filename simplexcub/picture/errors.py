@@ -6,11 +6,8 @@ import math
 from collections.abc import Sequence
 from dataclasses import dataclass
 
-from mpmath import mpf
-
-from simplexcub.average.exact import exact_mean
-from simplexcub.average.functions import SpectralFunction
-from simplexcub.errors import InputError, NothingFound
+from simplexcub.average.functions import SpectralFunction, exact_mean
+from simplexcub.errors import NothingFound
 from simplexcub.measures import Measure
 from simplexcub.rule import Rule
 from simplexcub.search import product_rule
@@ -99,7 +96,7 @@ def measure_errors(f: SpectralFunction, measure: Measure) -> Errors:
 def _ladder(measure: Measure) -> Sequence[Rule]:
     """The cheapest shipped rule of each degree, as long as a higher degree does not come with fewer nodes."""
     record = measure.parameters()
-    lines = [item for item in catalogue(N=measure.N, space="all") if item.measure == record]
+    lines = [item for item in catalogue(N=measure.N, space="all") if item.measure == record and not item.kind.told]
     rules = {}
     for degree in sorted({item.degree for item in lines}):
         rule = load(measure, degree=degree)
@@ -109,9 +106,9 @@ def _ladder(measure: Measure) -> Sequence[Rule]:
 
 def _reference(f: SpectralFunction, measure: Measure) -> tuple[float | None, str]:
     """A value to hold the rules against, and what it is; None where only the rules themselves are left."""
-    known = _closed_form(f, measure)
+    known = exact_mean(f, measure)
     if known is not None:
-        return known, "the exact mean"
+        return float(known.value), "the exact mean"
     if measure.N in _FINE:
         try:
             rule = product_rule(measure, _FINE[measure.N], digits=_DIGITS)
@@ -119,22 +116,3 @@ def _reference(f: SpectralFunction, measure: Measure) -> tuple[float | None, str
             return None, "the best of them"
         return float(rule.weights @ f(rule.nodes)), f"a product rule of degree {rule.degree}"
     return None, "the best of them"
-
-
-def _closed_form(f: SpectralFunction, measure: Measure) -> float | None:
-    """The exact mean where there is a formula: polynomials, entropies and power sums."""
-    exact = exact_mean(f, measure)
-    if exact is not None:
-        return float(exact)
-    try:
-        if f.name == "von-neumann":
-            return float(measure.entropy().value(_DIGITS))
-        family, _, order = f.name.rpartition("-")
-        if family == "power-sum":
-            return float(measure.power_mean(order, dps=_DIGITS))
-        if family == "tsallis":
-            power: mpf = measure.power_mean(order, dps=_DIGITS)
-            return float((1 - power) / (mpf(order) - 1))
-    except InputError:  # no closed form for this measure or this order
-        return None
-    return None
