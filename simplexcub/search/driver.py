@@ -131,8 +131,7 @@ class Search:
         walks: dict[int, Walk | None] = dict.fromkeys(numbers, begin)
         origin = "" if begin is None else hashlib.sha256(begin.pool.tobytes()).hexdigest()
         leg = 0
-        least = fewest_nodes(self.problem.group, self.problem.degree)
-        while walks and not self.budget.spent and self._most() >= least:
+        while walks and not self.budget.spent:
             legs = [Leg(self.problem, self.seed, number, leg, walk, origin) for number, walk in walks.items()]
             results = list(self.workers.run_all(legs))
             for number, walk in zip(list(walks), results, strict=True):
