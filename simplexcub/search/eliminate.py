@@ -36,7 +36,7 @@ def tchakaloff_start(problem: Problem, rng: np.random.Generator) -> tuple[Counts
     for richness in _RICHNESS:
         parts: Parts = {}
         points = {t: richness * len(basis) if t.unknowns > 1 else 1 for t in group.types}
-        values = {t: random_values(t, rng.dirichlet(np.ones(group.n), m)) for t, m in points.items()}
+        values = {t: random_values(t, system.points(rng, m)) for t, m in points.items()}
         columns = np.concatenate([basis.jet(v, t)[:, 0] for t, v in values.items()]).T
         weights, residual = nnls(columns, system.means, maxiter=20 * columns.shape[1])
         if residual > _SOLVED:
