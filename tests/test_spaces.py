@@ -14,7 +14,7 @@ from simplexcub.measures import Chamber, bures, dirichlet, flat, hilbert_schmidt
 from simplexcub.measures.chamber import spectrum
 from simplexcub.moments.schur import schur_power_sum
 from simplexcub.rule import Provenance, Rule
-from simplexcub.search import solve
+from simplexcub.search import patterns, solve
 from simplexcub.search.patterns import density_shares, structures
 from simplexcub.verify import lower_bound, prove, verify
 
@@ -207,3 +207,11 @@ def test_what_the_spaces_refuse():
         solve(flat(3), 4, space="ordered", symmetry="cyclic")
     with pytest.raises(InputError, match="space must be one of all, symmetric, ordered; got some"):
         solve(flat(3), 4, space="some")
+
+
+def test_where_no_structure_is_solved_walks_go_down_from_least_squares(monkeypatch):
+    monkeypatch.setattr(patterns, "structures", lambda *_: iter(()))
+    rule = solve(bures(3), 6, space="symmetric", digits=20)
+    assert rule.provenance.method == "orbit search"
+    assert len(rule) == 3
+    assert verify(rule).holds

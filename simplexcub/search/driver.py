@@ -147,8 +147,7 @@ class Search:
     def _legs(self, walks: dict[int, Walk | None], origin: str) -> None:
         """Legs of all walks in turn until each has ended, and is taken out, or the budget ends."""
         leg = 0
-        least = fewest_nodes(self.problem.group, self.problem.degree)
-        while walks and not self.budget.spent and self._most() >= least:
+        while walks and not self.budget.spent:
             legs = [Leg(self.problem, self.seed, number, leg, walk, origin) for number, walk in walks.items()]
             results = self.workers.run_all(legs)
             for number in list(walks):

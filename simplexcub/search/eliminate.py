@@ -38,7 +38,7 @@ def tchakaloff_start(problem: Problem, rng: np.random.Generator) -> tuple[Counts
     for richness in _RICHNESS:
         parts: Parts = {}
         points = {t: richness * len(basis) if t.unknowns > 1 else 1 for t in problem.types}
-        values = {t: _candidates(t, rng, m) for t, m in points.items()}
+        values = {t: _candidates(t, system.points(rng, m)) for t, m in points.items()}
         columns = np.concatenate([basis.jet(v, t)[:, 0] for t, v in values.items()]).T
         # A chosen orbit has at least a small weight, whatever the least squares make of the rest.
         least = np.concatenate([np.full(len(v), _LEAST * isinstance(t, Chosen)) for t, v in values.items()])
@@ -55,11 +55,11 @@ def tchakaloff_start(problem: Problem, rng: np.random.Generator) -> tuple[Counts
     return None
 
 
-def _candidates(type_: OrbitType, rng: np.random.Generator, count: int) -> FloatArray:
-    """Distinct coordinates of orbits offered to the start: random ones, or the given ones of a chosen orbit."""
+def _candidates(type_: OrbitType, points: FloatArray) -> FloatArray:
+    """Distinct coordinates of orbits offered to the start: near the points, or the given ones of a chosen orbit."""
     if isinstance(type_, Chosen):
         return np.array([[float(x) for x in type_.coordinates]])
-    return random_values(type_, rng.dirichlet(np.ones(len(type_.pattern)), count))
+    return random_values(type_, points)
 
 
 @dataclass(frozen=True)

@@ -11,7 +11,8 @@ patterns of their own for each representative, from the same weights disturbed a
 sampled spectra.
 
 M rises from the lower bound, in longer steps after the first few, until a structure is solved. If all N eigenvalues are
-apart there, an elimination walk goes down from it. Each later round returns to the smaller M with more structures.
+apart there, an elimination walk goes down from it; if none is solved, walks go down from non-negative least squares.
+Each later round returns to the smaller M with more structures.
 """
 
 from __future__ import annotations
@@ -50,19 +51,21 @@ class PatternSearch(Search):
         least = max(fewest_nodes(group, self.problem.degree), -(-equations // group.n))
         first = 0
         for last in TURNS:
-            self._climb(least, first, last)
+            small = group.n <= LARGEST_WALK
+            self._climb(least, 2 * least if small else equations, first, last)
+            if self.best is None and small and not self.budget.spent:
+                self._walk([0, 1])
             first = last
             found = self.best
             if found is None or found.nodes <= least or self.budget.spent:
                 return
-            if len(found.counts) == 1 and found.counts[0][0].unknowns == group.n <= LARGEST_WALK:
+            if len(found.counts) == 1 and found.counts[0][0].unknowns == group.n and small:
                 self._walk([last], Walk(found.counts, found.candidate[None], max(1, found.nodes // 8), 0, False))
 
-    def _climb(self, least: int, first: int, last: int) -> None:
+    def _climb(self, least: int, most: int, first: int, last: int) -> None:
         """Try the structures of these turns with more and more representatives, until one is solved."""
-        equations = len(self.problem.basis)
         nodes = least
-        while nodes <= min(self._most(), equations) and not self.budget.spent:
+        while nodes <= (most if self.best is None else self._most()) and not self.budget.spent:
             if self._try_turns(nodes, first, last):
                 return
             far = self.best is None and nodes >= least + STEPS

@@ -140,7 +140,7 @@ class System:
             if isinstance(block.type, Chosen):
                 u[:, block.weights] = block.type.size * rng.uniform(0.1, 1.5, (batch, block.count))
                 continue
-            points = self._points(rng, batch * block.count).reshape(batch, block.count, -1)
+            points = self.points(rng, batch * block.count).reshape(batch, block.count, -1)
             u[:, block.coordinates] = random_values(block.type, points)[..., :-1].reshape(batch, -1)
             u[:, block.weights] = block.type.size * rng.uniform(0.5, 1.5, (batch, block.count))
             if self.problem.integers:
@@ -149,7 +149,7 @@ class System:
         u[:, : self.orbits] /= u[:, : self.orbits].sum(axis=1, keepdims=True)
         return u
 
-    def _points(self, rng: np.random.Generator, count: int) -> FloatArray:
+    def points(self, rng: np.random.Generator, count: int) -> FloatArray:
         """Where starts come from: anywhere on the simplex; for spectra, samples of the measure, smallest first."""
         if isinstance(self.problem.group, Spectra):
             return np.sort(self.problem.measure.sample(rng, count), axis=1)
