@@ -97,7 +97,7 @@ def test_shipped_spectra_reach_their_bounds(call: Call) -> None:
     }
     status, out, _ = call("tables", "hilbert-schmidt", "-N", 16)
     assert status == 0
-    assert out[1].split()[:8] == ["hilbert-schmidt,", "N", "=", "16", "symmetric", "6", "3", "3"]
+    assert out[1].split()[:7] == ["hilbert-schmidt", "16", "symmetric", "full", "6", "3", "3"]
 
 
 def test_load_takes_the_space() -> None:

@@ -216,7 +216,7 @@ def test_slopes_are_those_of_the_values() -> None:
 def test_the_functions_take_their_share_of_unknowns() -> None:
     group = named_group("full", 3)
     also = read_extras(["entropy", "power-1/2"], flat(3), group)
-    assert len(extended_basis(group, 4, also)) == len(extended_basis(group, 4, ())) + 2
+    assert len(extended_basis(group, 4, also, flat(3))) == len(extended_basis(group, 4, (), flat(3))) + 2
     fewest = [
         next(m for m in range(1, 60) if possible_counts(group, 4, m, also=extras)) for extras in ((), also[:1], also)
     ]

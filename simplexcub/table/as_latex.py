@@ -14,7 +14,7 @@ from typing import NamedTuple
 from simplexcub.rule import Rule
 from simplexcub.table import tex
 from simplexcub.table.describe import Fact, counted, facts, heading, measure_name, noun
-from simplexcub.table.sheet import Entry, Sheet, sheet
+from simplexcub.table.sheet import TOGETHER, Entry, Sheet, sheet
 from simplexcub.table.sources import Source, numbered, sources
 
 MARK = "simplexcub rule"
@@ -106,8 +106,8 @@ def _without_orbit_weights(page: Sheet) -> Sheet:
     if not {"w", "W"} <= set(page.labels):
         return page
     entries = tuple(Entry(e.lead, tuple(pair for pair in e.numbers if pair[0] != "W")) for e in page.entries)
-    legend = "Every different ordering of an orbit's pattern is a node, and w is the weight of each."
-    return Sheet(page.by_orbits, page.head, tuple(name for name in page.labels if name != "W"), entries, legend)
+    labels = tuple(name for name in page.labels if name != "W")
+    return Sheet(page.by_orbits, page.head, labels, entries, page.legend.replace(TOGETHER, ""))
 
 
 def _caption(rule: Rule, page: Sheet, said: dict[str, Fact], *, example: bool) -> str:

@@ -17,11 +17,13 @@ from simplexcub.table.shipped import Shipped, catalogue, folder
 
 HEAD = (
     *("measure", "N", "space", "symmetry", "degree", "nodes", "bound", "efficiency", "published", "digits", "proven"),
-    "name",
+    *("special", "name"),
 )
 _NUMBERS = frozenset({"N", "degree", "nodes", "bound", "efficiency", "published", "digits"})
 _GAP = "  "
 _NONE = "–"
+_SPECIAL = "special"
+_WRAPPED = r"p{44pt}"
 
 
 def overview(lines: Sequence[Shipped], to: str = "text") -> str:
@@ -35,7 +37,8 @@ def overview(lines: Sequence[Shipped], to: str = "text") -> str:
     lines : sequence of Shipped
         From :func:`simplexcub.table.catalogue`.
     to : {"text", "markdown", "latex"}
-        The LaTeX fragment needs booktabs and longtable, and leaves out the name.
+        The LaTeX fragment needs booktabs and longtable, and leaves out the name. There is a column `special` where it
+        has anything to say.
 
     Raises
     ------
@@ -44,7 +47,9 @@ def overview(lines: Sequence[Shipped], to: str = "text") -> str:
     """
     if to not in OVERVIEWS:
         raise InputError(f"an overview must be one of {', '.join(OVERVIEWS)}", to)
-    return OVERVIEWS[to]([_cells(line) for line in lines])
+    rows = [HEAD, *(_cells(line) for line in lines)]
+    told = [k for k, name in enumerate(HEAD) if name != _SPECIAL or any(row[k] for row in rows[1:])]
+    return OVERVIEWS[to]([tuple(row[k] for k in told) for row in rows])
 
 
 def by_name(name: str) -> Rule:
@@ -102,38 +107,43 @@ def _cells(line: Shipped) -> tuple[str, ...]:
         _NONE if mark is None else f"{mark.nodes} {mark.symmetry}",
         str(line.digits),
         "yes" if line.proven else "no",
+        line.kind.told.removeprefix(", ") + ("" if line.embedded is None else f" to degree {line.embedded}"),
         name_of(line),
     )
 
 
-def _text(rows: Sequence[tuple[str, ...]]) -> str:
-    table = [HEAD, *rows]
-    widths = [max(len(row[k]) for row in table) for k in range(len(HEAD))]
+def _text(table: Sequence[tuple[str, ...]]) -> str:
+    widths = [max(len(row[k]) for row in table) for k in range(len(table[0]))]
     lines = []
     for row in table:
-        cells = zip(HEAD, row, widths, strict=True)
+        cells = zip(table[0], row, widths, strict=True)
         lines.append(_GAP.join(cell.rjust(w) if name in _NUMBERS else cell.ljust(w) for name, cell, w in cells))
     return "".join(f"{line.rstrip()}\n" for line in lines)
 
 
-def _markdown(rows: Sequence[tuple[str, ...]]) -> str:
-    rule = tuple("---:" if name in _NUMBERS else ":---" for name in HEAD)
-    return "".join(f"| {' | '.join(row)} |\n" for row in (HEAD, rule, *rows))
+def _markdown(table: Sequence[tuple[str, ...]]) -> str:
+    head, *rows = table
+    rule = tuple("---:" if name in _NUMBERS else ":---" for name in head)
+    return "".join(f"| {' | '.join(row)} |\n" for row in (head, rule, *rows))
 
 
-def _latex(rows: Sequence[tuple[str, ...]]) -> str:
-    head = " & ".join("eff." if name == "efficiency" else name for name in HEAD[:-1]) + r" \\"
-    types = "".join("r" if name in _NUMBERS else "l" for name in HEAD[:-1])
+def _latex(table: Sequence[tuple[str, ...]]) -> str:
+    digits = {row[table[0].index("digits")] for row in table[1:]}
+    same = f" All are printed to {digits.pop()} digits." if len(digits) == 1 else ""
+    left_out = {"name", *(["digits"] if same else [])}
+    names, *rows = [tuple(c for c, name in zip(row, table[0], strict=True) if name not in left_out) for row in table]
+    head = " & ".join("eff." if name == "efficiency" else name for name in names) + r" \tabularnewline"
+    types = "".join("r" if name in _NUMBERS else _WRAPPED if name == _SPECIAL else "l" for name in names)
     lines = [
         r"% In the preamble: \usepackage{booktabs,longtable}",
-        r"\begingroup\footnotesize\setlength{\tabcolsep}{3pt}\setlength{\LTcapwidth}{\textwidth}",
+        r"\begingroup\scriptsize\setlength{\tabcolsep}{1.7pt}\setlength{\LTcapwidth}{\textwidth}",
         rf"\begin{{longtable}}{{@{{}}{types}@{{}}}}",
         rf"\caption{{{len(rows)} rules. No rule of the degree has fewer nodes than the bound; eff.\ is bound over "
-        r"nodes; published is the fewest nodes in the literature, for full symmetry or any.}\\",
+        rf"nodes; published is the fewest nodes in the literature, for full symmetry or any.{same}}}\\",
         *(r"\toprule", head, r"\midrule\endfirsthead"),
         *(r"\toprule", head, r"\midrule\endhead"),
         r"\bottomrule\endlastfoot",
-        *(" & ".join(tex.prose(cell) for cell in row[:-1]) + r" \\" for row in rows),
+        *(" & ".join(tex.prose(cell) for cell in row) + r" \tabularnewline" for row in rows),
         r"\end{longtable}",
         r"\endgroup",
     ]

@@ -12,6 +12,7 @@ from simplexcub.rule import Orbit, Rule
 from simplexcub.table.orbits import count_nodes, node_weights
 
 SECOND = "w2"  # label of the embedded weights
+TOGETHER = ", W of all of them together"
 _LETTERS = "abcdefghijklmnopqrstuv"  # w and W are the weights
 _GROUP = 10
 _UNGROUPED = 20
@@ -67,7 +68,7 @@ def sheet(rule: Rule) -> Sheet:
     if whole:
         legend = (
             "Every different ordering of an orbit's pattern is a node. "
-            "w is the weight of each of these nodes, W of all of them together."
+            f"w is the weight of each of these nodes{TOGETHER}."
         )
     else:
         legend = "Every pattern, sorted with its largest value first, is a node; W is its weight."

@@ -39,6 +39,7 @@ class ExtendedSystem(System):
         self.measure = measure
         self.structure, self.degree, self.n, self.whole = inner.structure, inner.degree, inner.n, inner.whole
         self.shares, self.factor, self.unknowns = inner.shares, inner.factor, inner.unknowns
+        self.descending = inner.descending
         self.means = [*inner.means, *(Fraction(0) for _ in also)]  # those of the functions are no fractions
 
     def residuals(self, x: Sequence[int], one: int) -> list[Fraction]:
