@@ -8,28 +8,26 @@ index is remade from the files at the end, also when the run is interrupted.
 
 from __future__ import annotations
 
-import argparse
 import logging
-import sys
 from collections.abc import Callable, Collection, Iterable, Iterator, Sequence
 from pathlib import Path
 
-from simplexcub.errors import NothingFound, SimplexcubError
-from simplexcub.measures import FAMILIES, Measure, bures, flat, hilbert_schmidt
+from simplexcub.errors import NothingFound
+from simplexcub.measures import Measure, bures, flat, hilbert_schmidt
 from simplexcub.rule import Rule, Space
 from simplexcub.search import solve
+from simplexcub.table.campaign import DIGITS, keep, options_of, status
 from simplexcub.table.describe import counted
 from simplexcub.table.files import read_text
 from simplexcub.table.formats import save
 from simplexcub.table.kind import Kind, is_plain, place_for
 from simplexcub.table.reading import parse
 from simplexcub.table.record import SPACES
-from simplexcub.table.shipped import add, folder, reindex
+from simplexcub.table.shipped import reindex
 from simplexcub.verify import verify
 
 log = logging.getLogger(__name__)
 
-DIGITS = 50
 # Degrees per space and number of components. Gauss rules (N = 2) have odd degree, on symmetric functions 4 m − 1.
 DEGREES: dict[Space, dict[int, Sequence[int]]] = {
     "all": {2: range(1, 42, 2), 3: range(1, 31), 4: range(1, 15), 5: range(1, 9), 6: range(1, 8)},
@@ -120,13 +118,7 @@ def build(
             if space == "all" and rule.symmetry != "full" and not _fewest(rule, where):
                 say(f"{name}: {counted(len(rule), 'node')}, no fewer than with full symmetry")
                 continue
-            report = verify(rule, prove=True)
-            if not (report.holds and report.verification.positive and report.verification.inside):
-                say(f"{name}: {'; '.join(report.reasons) or 'not positive and inside'}")
-                continue
-            path = add(rule.verified(report.verification), where)
-            say(f"{name}: {counted(len(rule), 'node')}, {'kept' if path else 'no better than the table that is there'}")
-            written += [path] if path else []
+            written += keep(rule, where, name, say)
     finally:
         reindex(where)
     return written
@@ -163,25 +155,19 @@ def _fewest(rule: Rule, where: Path) -> bool:
 
 def main(argv: Sequence[str] | None = None) -> int:
     """Run the build; status 0, or 2 with one line on bad input."""
-    logging.basicConfig(level=logging.INFO, format="%(message)s", stream=sys.stderr)
-    parser = argparse.ArgumentParser(prog="python -m simplexcub.table.build", description=__doc__)
-    parser.add_argument("--measure", choices=FAMILIES, action="append", default=[], help="only this family")
-    parser.add_argument("-N", type=int, choices=SIZES, action="append", default=[], help="only this N")
+    parser = options_of("build", __doc__, SIZES, 60.0)
     parser.add_argument("-t", type=int, action="append", default=[], metavar="DEGREE", help="only this degree")
-    parser.add_argument("--budget", type=float, default=60.0, metavar="SECONDS", help="for each rule (default 60)")
     parser.add_argument("--space", choices=SPACES, default="all", help="what the rules are exact for (default all)")
     parser.add_argument("--symmetry", default="full", help="of the node sets: full (default), best, or a group's name")
-    parser.add_argument("--seed", type=int, default=0, help="of the search (default 0)")
     parser.add_argument("--jobs", type=int, default=1, help="processes (default 1)")
-    parser.add_argument("--only-missing", action="store_true", help="skip rules that have a table already")
     parser.add_argument("--index", action="store_true", help="only remake the index from the tables")
     parser.add_argument("--verify", action="store_true", help="only verify every table again")
-    parser.add_argument("--folder", type=Path, default=folder(), help="folder of tables (default: the shipped ones)")
     options = parser.parse_args(argv)
-    try:
+
+    def campaign() -> None:
         if options.verify:
             refresh(options.folder)
-            return 0
+            return
         build(
             () if options.index else targets(options.measure, options.N, options.t, options.space),
             where=options.folder,
@@ -192,10 +178,8 @@ def main(argv: Sequence[str] | None = None) -> int:
             symmetry=options.symmetry,
             only_missing=options.only_missing,
         )
-    except SimplexcubError as error:
-        log.error("%s", error)
-        return 2
-    return 0
+
+    return status(campaign)
 
 
 if __name__ == "__main__":

@@ -7,22 +7,18 @@ and proven where it can be; with ``--only-missing`` what is there is skipped.
 
 from __future__ import annotations
 
-import argparse
 import logging
-import sys
 from collections.abc import Callable, Collection, Iterator, Sequence
 from dataclasses import dataclass
 from pathlib import Path
 
-from simplexcub.errors import NothingFound, SimplexcubError
-from simplexcub.measures import FAMILIES, Measure, bures, flat, hilbert_schmidt
+from simplexcub.errors import NothingFound
+from simplexcub.measures import Measure, bures, flat, hilbert_schmidt
 from simplexcub.rule import Rule
 from simplexcub.search import embed, solve
-from simplexcub.table.build import DIGITS
-from simplexcub.table.describe import counted
+from simplexcub.table.campaign import DIGITS, keep, options_of, status
 from simplexcub.table.kind import Kind, place_for
-from simplexcub.table.shipped import add, folder, load, reindex
-from simplexcub.verify import verify
+from simplexcub.table.shipped import load, reindex
 
 log = logging.getLogger(__name__)
 
@@ -113,15 +109,7 @@ def build(
             except NothingFound as nothing:
                 say(f"{name}: {nothing.tried}")
                 continue
-            report = verify(rule, prove=True)
-            if not (report.holds and report.verification.positive and report.verification.inside):
-                say(f"{name}: {'; '.join(report.reasons) or 'not positive and inside'}")
-                continue
-            if report.proof is not None and not report.proof.holds:
-                say(f"{name}: not proven: {report.proof.reason}")
-            path = add(rule.verified(report.verification), where)
-            say(f"{name}: {counted(len(rule), 'node')}, {'kept' if path else 'no better than the table that is there'}")
-            written += [path] if path else []
+            written += keep(rule, where, name, say)
     finally:
         reindex(where)
     return written
@@ -129,28 +117,19 @@ def build(
 
 def main(argv: Sequence[str] | None = None) -> int:
     """Run the build; status 0, or 2 with one line on bad input."""
-    logging.basicConfig(level=logging.INFO, format="%(message)s", stream=sys.stderr)
-    parser = argparse.ArgumentParser(prog="python -m simplexcub.table.build_special", description=__doc__)
+    parser = options_of("build_special", __doc__, (2, 3, 4), 30.0)
     parser.add_argument("--kind", choices=DEGREES, action="append", default=[], help="only this kind")
-    parser.add_argument("--measure", choices=FAMILIES, action="append", default=[], help="only this family")
-    parser.add_argument("-N", type=int, choices=(2, 3, 4), action="append", default=[], help="only this N")
-    parser.add_argument("--budget", type=float, default=30.0, metavar="SECONDS", help="for each rule (default 30)")
-    parser.add_argument("--seed", type=int, default=0, help="of the search (default 0)")
-    parser.add_argument("--only-missing", action="store_true", help="skip rules that have a table already")
-    parser.add_argument("--folder", type=Path, default=folder(), help="folder of tables (default: the shipped ones)")
     options = parser.parse_args(argv)
-    try:
-        build(
-            targets(options.kind, options.measure, options.N),
+    wanted = targets(options.kind, options.measure, options.N)
+    return status(
+        lambda: build(
+            wanted,
             where=options.folder,
             budget=options.budget,
             seed=options.seed,
             only_missing=options.only_missing,
         )
-    except SimplexcubError as error:
-        log.error("%s", error)
-        return 2
-    return 0
+    )
 
 
 if __name__ == "__main__":
