@@ -294,7 +294,7 @@ def test_the_build_as_a_command(tmp_path, caplog):
 
 
 def test_the_targets_are_the_promised_set():
-    assert len(list(table_build.targets())) == 3 * (21 + 30 + 14 + 8 + 7)
+    assert len(list(table_build.targets())) == 3 * (21 + 32 + 16 + 10 + 8)
     assert {measure for measure, _ in table_build.targets(["flat"], [3])} == {flat(3)}
     assert [*table_build.targets([], [16], space="symmetric")] == [(hilbert_schmidt(16), t) for t in (6, 8, 10)]
     assert {measure.family for measure, _ in table_build.targets(space="ordered")} == {"flat", "hilbert-schmidt"}

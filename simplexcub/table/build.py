@@ -30,7 +30,10 @@ log = logging.getLogger(__name__)
 
 # Degrees per space and number of components. Gauss rules (N = 2) have odd degree, on symmetric functions 4 m − 1.
 DEGREES: dict[Space, dict[int, Sequence[int]]] = {
-    "all": {2: range(1, 42, 2), 3: range(1, 31), 4: range(1, 15), 5: range(1, 9), 6: range(1, 8)},
+    "all": {
+        **{2: range(1, 42, 2), 3: (*range(1, 31), 40, 50), 4: (*range(1, 15), 16, 20)},
+        **{5: range(1, 11), 6: range(1, 9)},
+    },
     "symmetric": {
         **{2: range(3, 44, 4), 3: range(1, 21), 4: range(1, 13), 5: range(1, 13), 6: range(1, 13)},
         **dict.fromkeys((8, 16, 32, 64), (6, 8, 10)),
