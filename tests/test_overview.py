@@ -28,7 +28,7 @@ def test_the_latex_overview_has_one_row_per_table(call: Call) -> None:
     _, out, _ = call("tables", "flat", "-N", 3, "--to", "latex")
     rows = [line for line in out if line.startswith("flat & 3 & ")]
     assert len(rows) == len(catalogue("flat", N=3))
-    assert {line.count("&") for line in rows} == {len(HEAD) - 3}  # no name; digits, which are all the same, in the caption
+    assert {line.count("&") for line in rows} == {len(HEAD) - 3}  # no name; digits stand in the caption
     assert "50 digits" in "\n".join(out)
 
 
