@@ -36,6 +36,7 @@ __all__ = ["Chebyshev", "KnownMean", "Progress", "chebyshev", "embed", "product_
 
 _SPACES = ("all", "symmetric", "ordered")
 _SPARE_DIGITS = 10  # of the chamber's coordinates, which are added up
+MOST_DIGITS, MOST_DEGREE = 1000, 500
 _PRODUCT_SHARE = 2  # products with up to so many nodes per equation are worth setting out from
 _NO_PROVENANCE = Provenance("", 0, "", "conical product")
 
@@ -67,7 +68,7 @@ def solve(
     ----------
     measure : Measure
     degree : int
-        At least 1. A Gauss rule reaches the next odd degree, which is then the rule's degree.
+        From 1 to 500. A Gauss rule reaches the next odd degree, which is then the rule's degree.
     space : {"all", "symmetric", "ordered"}
         What the rule is exact for: every polynomial; every symmetric one, with as few representatives of orbits as can
         be; every one of the ordered spectrum λ_1 ≥ … ≥ λ_N, for a measure with exact moments there.
@@ -87,7 +88,7 @@ def solve(
     include : {"vertices", "centre", "edge-midpoints"} or sequence of them
         Nodes that the rule must have, for those who hold values there; their weights are free, but positive.
     digits : int
-        Significant digits of nodes and weights, at least 5.
+        Significant digits of nodes and weights, from 5 to 1000.
     seed : int
         Of the random starts; the same seed gives the same rule.
     budget : float
@@ -288,6 +289,10 @@ def _check(*, degree: int, space: str, digits: int, seed: int, budget: float, jo
     for name, value, least in (("degree", degree, 1), ("digits", digits, 5), ("seed", seed, 0), ("jobs", jobs, 1)):
         if isinstance(value, bool) or not isinstance(value, int) or value < least:
             raise InputError(f"{name} must be an integer of at least {least}", value)
+    if digits > MOST_DIGITS:
+        raise InputError(f"digits must be at most {MOST_DIGITS}", digits)
+    if degree > MOST_DEGREE:
+        raise InputError(f"degree must be at most {MOST_DEGREE}", degree)
     if not budget > 0:
         raise InputError("budget must be a positive number of seconds", budget)
     if space not in _SPACES:

@@ -1,4 +1,4 @@
-"""What `averages.py` compares with: sampling, Sobol points, cubature, nquad and conical products."""
+"""What `averages.py` and `spectra.py` compare with: sampling, quasi-random points, cubature, nquad, products."""
 
 from __future__ import annotations
 
@@ -12,13 +12,15 @@ from typing import Any
 import numpy as np
 from numpy.typing import NDArray
 from scipy.integrate import cubature, nquad
-from scipy.special import roots_jacobi
+from scipy.special import betaincinv, ndtri, roots_jacobi
 from scipy.stats import qmc
 
 from simplexcub.average.functions import spectral_function
 from simplexcub.measures import Measure
 
 FloatArray = NDArray[np.float64]
+ComplexArray = NDArray[np.complex128]
+SEQUENCES = {"Sobol": qmc.Sobol, "Halton": qmc.Halton}
 SECONDS = 4.0
 Cost = tuple[float, float] | None  # evaluations and seconds; None where the tolerance was not reached
 
@@ -57,26 +59,55 @@ def broken_stick(y: FloatArray) -> tuple[FloatArray, FloatArray]:
     return np.stack([*parts, left], axis=1), jacobian
 
 
+def spectra_of(g: ComplexArray, other: ComplexArray | None) -> FloatArray:
+    """Spectra of density matrices from Ginibre matrices: one for Hilbert–Schmidt, two for Bures."""
+    if other is not None:
+        q, r = np.linalg.qr(other)
+        phases = np.diagonal(r, axis1=1, axis2=2)
+        g = g + (q * (phases / np.abs(phases))[:, None, :]) @ g
+    values = np.linalg.eigvalsh(g @ g.conj().transpose(0, 2, 1))
+    return np.asarray(values / values.sum(axis=1, keepdims=True))
+
+
 @lru_cache(maxsize=1)
 def draws(measure: Measure, is_bures: bool) -> tuple[FloatArray, float]:
     """Spectra by numpy alone, and seconds per draw."""
     n, size = measure.N, 20_000
     rng = np.random.default_rng(0)
 
-    def ginibre() -> NDArray[np.complex128]:
+    def ginibre() -> ComplexArray:
         return rng.standard_normal((size, n, n)) + 1j * rng.standard_normal((size, n, n))
 
     def spectra() -> FloatArray:
-        g = ginibre()
-        if is_bures:
-            q, r = np.linalg.qr(ginibre())
-            phases = np.diagonal(r, axis1=1, axis2=2)
-            g = g + (q * (phases / np.abs(phases))[:, None, :]) @ g
-        values = np.linalg.eigvalsh(g @ g.conj().transpose(0, 2, 1))
-        return np.asarray(values / values.sum(axis=1, keepdims=True))
+        return spectra_of(ginibre(), ginibre() if is_bures else None)
 
     found, seconds = timed(spectra)
     return found, seconds / size
+
+
+def quasi_random(measure: Measure, is_bures: bool, sequence: str, size: int, seed: int) -> FloatArray:
+    """Spectra from a scrambled sequence in the cube, mapped to the measure itself, so that all weigh the same.
+
+    Hilbert–Schmidt takes 2N − 2 dimensions: the squared entries of the bidiagonal matrix of I. Dumitriu and A. Edelman
+    (J. Math. Phys. 43 (2002) 5830) over their sum are Dirichlet, a product of Beta variables. Bures takes 4N²: normal
+    variables, as entries of two Ginibre matrices.
+    """
+    n = measure.N
+    with np.errstate(all="ignore"):
+        u = SEQUENCES[sequence](4 * n * n if is_bures else 2 * n - 2, seed=seed).random(size)
+        u = np.clip(u, 1e-12, 1 - 1e-12)
+        if is_bures:
+            z = ndtri(u).reshape(size, 2, 2, n, n)
+            first, second = (z[:, k, 0] + 1j * z[:, k, 1] for k in range(2))
+            return spectra_of(first, second)
+        alpha = np.array([*range(n, 0, -1), *range(n - 1, 0, -1)], dtype=np.float64)
+        after = alpha[::-1].cumsum()[::-1][1:]
+        parts, _ = broken_stick(betaincinv(alpha[:-1], after, u))
+    rows = np.arange(n)
+    matrix = np.zeros((size, n, n))
+    matrix[:, rows, rows] = np.sqrt(parts[:, :n])
+    matrix[:, rows[1:], rows[:-1]] = np.sqrt(parts[:, n:])
+    return np.asarray(np.linalg.svd(matrix, compute_uv=False) ** 2)
 
 
 def by_numpy(name: str, measure: Measure, is_bures: bool, tol: float, truth: float) -> Cost:
@@ -185,15 +216,26 @@ def rest(x: FloatArray, is_bures: bool) -> FloatArray:
     return density(x, is_bures) * np.sqrt(x.prod(axis=1)) if is_bures else density(x, is_bures)
 
 
+def conical_spectra(n: int, is_bures: bool, size: int, *, chamber: bool) -> tuple[FloatArray, FloatArray]:
+    """Points and weights for the measure: on the simplex, or with flat rules on the chamber of ordered spectra."""
+    x, weights = conical(n, is_bures and not chamber, size)
+    if not chamber:
+        weights = weights * rest(x, is_bures)
+        return x, weights / weights.sum()
+    corners = np.tril(np.ones((n, n))) / np.arange(1, n + 1)[:, None]
+    x = x @ corners
+    weights = weights * density(x, is_bures)
+    return x, weights / weights.sum()
+
+
 def by_conical(name: str, measure: Measure, is_bures: bool, tol: float, truth: float) -> Cost:
     f = spectral_function(name)
 
     def work() -> tuple[float, int]:
         size, count, before = 2, 0, math.inf
         while size ** (measure.N - 1) <= 200_000 and size < 1000:
-            x, weights = conical(measure.N, is_bures, size)
-            weights = weights * rest(x, is_bures)
-            value = float(weights @ f(x) / weights.sum())
+            x, weights = conical_spectra(measure.N, is_bures, size, chamber=False)
+            value = float(weights @ f(x))
             count += len(x)
             if abs(value - before) <= tol:
                 return value, count
