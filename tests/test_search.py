@@ -14,6 +14,7 @@ from simplexcub.search.conical import conical_count
 from simplexcub.search.counts import node_count
 from simplexcub.search.driver import Budget, Search
 from simplexcub.search.gauss import recurrence
+from simplexcub.search.symmetries import within_reach
 from simplexcub.search.system import Problem
 from simplexcub.search.workers import Workers
 from simplexcub.symmetry import named_group
@@ -287,6 +288,8 @@ def test_a_search_takes_only_rules_within_its_limit_of_nodes():
         ({"space": "round"}, "space must be one of all"),
         ({"symmetry": "some"}, "symmetry must be one of full, .*, none; got some"),
         ({"symmetry": "klein"}, "symmetry klein needs N = 4; got 3"),
+        ({"digits": 1001}, "digits must be at most 1000; got 1001"),
+        ({"degree": 501}, "degree must be at most 500; got 501"),
         ({"symmetry": "product-2-2"}, "block sizes of a product must be positive and sum to N = 3; got product-2-2"),
         ({"symmetry": "product-3-0"}, "block sizes"),
         ({"symmetry": "product-a"}, "block sizes"),
@@ -301,3 +304,9 @@ def test_bad_options(options, words):
 def test_a_symmetry_that_the_measure_lacks_is_refused(symmetry):
     with pytest.raises(sc.InputError, match=r"symmetry must leave .* unchanged"):
         sc.solve(sc.dirichlet([1, 2, 3]), 3, symmetry=symmetry)
+
+
+def test_what_is_out_of_reach_is_not_searched_for():
+    assert within_reach(named_group("full", 3), 70)
+    assert not within_reach(named_group("full", 3), 90)
+    assert not within_reach(named_group("none", 3), 150)

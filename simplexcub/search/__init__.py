@@ -26,7 +26,7 @@ from simplexcub.search.levenberg import Overdue
 from simplexcub.search.patterns import PatternSearch
 from simplexcub.search.record import Record
 from simplexcub.search.spaces import folded, gauss_pairs, unfolded
-from simplexcub.search.symmetries import groups_for
+from simplexcub.search.symmetries import groups_for, within_reach
 from simplexcub.search.system import FloatArray
 from simplexcub.search.wish import Wish, fixed_integers, make_wish, with_claims
 from simplexcub.search.workers import Workers, local_workers
@@ -156,6 +156,7 @@ def solve(
             reason = f"{none.tried}; "
     if measure.N == 2 and wish.plain:
         return product_rule(measure, degree, digits=digits, seed=seed)
+    groups = [group for group in groups if within_reach(group, degree)]
     record = None if resume is None else Record(resume)
     if executor is None:
         with local_workers(jobs, record) as workers:

@@ -2,9 +2,11 @@
 
 from __future__ import annotations
 
+from math import comb, factorial
+
 from simplexcub.errors import InputError
 from simplexcub.measures import Dirichlet, Measure
-from simplexcub.symmetry import Group, named_group
+from simplexcub.symmetry import Group, Spectra, named_group
 
 # Node counts measured over degrees 3 to 12: few symmetries first, since that is where the fewest nodes were found.
 _PROMISE = {
@@ -12,6 +14,16 @@ _PROMISE = {
     4: ("cyclic", "klein", "dihedral", "stabiliser", "none", "full"),
 }
 _PROMISE_ELSE = ("stabiliser", "none", "full")
+
+_MOST_FULL, _MOST = 600, 2000  # polynomials, beyond which a search would take hours to set up or fill the memory
+
+
+def within_reach(group: Group, degree: int) -> bool:
+    """Whether the polynomials that such a search works on are few enough."""
+    if isinstance(group, Spectra):
+        return True
+    count = comb(degree + group.n - 1, group.n - 1)
+    return count // factorial(group.n) <= _MOST_FULL if group.is_full else count <= _MOST
 
 
 def groups_for(measure: Measure, symmetry: str) -> list[Group]:
