@@ -21,8 +21,9 @@ from importlib import import_module
 from typing import Any
 
 from simplexcub import hooks
+from simplexcub.version import VERSION
 
-__version__ = "0.1.0"
+__version__ = VERSION
 
 # Loaded when first asked for, so that `import simplexcub` costs nothing and each use pays only for its own floor.
 _HOME = {

@@ -141,3 +141,8 @@ def test_a_resumed_search_gives_the_same_rule(tmp_path: Path) -> None:
     assert len(list(tmp_path.iterdir())) == count > 0
     plain = sc.solve(flat(3), 4, resume=tmp_path, digits=20)
     assert len(plain) == 6 < len(first)
+
+
+def test_a_set_of_nodes_is_named_once() -> None:
+    with pytest.raises(InputError, match="named once; got vertices, vertices"):
+        sc.solve(flat(3), 3, include=("vertices", "vertices"))

@@ -167,7 +167,7 @@ def test_tables_lists_all_that_is_shipped(call: Call) -> None:
     assert (status, err) == (0, [])
     assert len(out) == 1 + len(catalogue()) > 80
     assert " ".join(out[0].split()) == (
-        "measure N space symmetry degree nodes bound efficiency published digits proven name"
+        "measure N space symmetry degree nodes bound efficiency published digits proven special name"
     )
 
 

@@ -189,3 +189,10 @@ def test_several_functions_that_miss_the_tolerance_say_so(call: Call) -> None:
     assert (status, len(err)) == (1, 1)
     assert "was not met" in err[0]
     assert out[0] == "rank-0.2"
+
+
+def test_a_function_of_components_is_not_taken_for_symmetric(call: Call) -> None:
+    status, out, err = call("average", "flat", "-N", 3, "x1", "--space", "symmetric")
+    assert (status, out, len(err)) == (2, [], 1)
+    assert "does not mind the order; got" in err[0]
+    assert "x1" in err[0]

@@ -32,7 +32,7 @@ SOLVE = ("solve", "flat", "-N", "2", "-t", "3")
         (("moments", "flat", "-N", "3", "--exponents", "1,1"), ("one entry per component", "(1, 1)")),
         (("moments", "flat", "-N", "2", "--exponents", "-1,2"), ("non-negative", "(-1, 2)")),
         (("moments", "flat", "-N", "2", "--exponents", "1,,2"), ("--exponents", "whole number", "''")),
-        (("moments", "flat", "-N", "2"), ("required", "--exponents")),
+        (("moments", "flat", "-N", "2"), ("must be given", "--exponents")),
         (("moments", "flat", "-N", "2", "--exponents", "1,1", "--digits", "0"), ("digits must be", "got 0")),
         (("moments", "flat", "-N", "2", "--exponents", "1,1", "--digits", "999999999"), ("digits must be",)),
         (("solve", "flat", "-N", "2", "-t", "0"), ("degree must be", "at least 1", "got 0")),

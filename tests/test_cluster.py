@@ -96,7 +96,7 @@ def test_tasks_at_a_time_are_the_threads_of_the_cluster_or_those_asked_for(call,
 
 
 def test_workers_of_another_version_are_refused(call, client, monkeypatch):
-    monkeypatch.setattr(sc, "__version__", "9.9")
+    monkeypatch.setattr("simplexcub.cli.cluster.VERSION", "9.9")
     status, out, err = call(*COMMAND, "--cluster", client.scheduler.address)
     assert (status, out, len(err)) == (2, [], 1)
     assert "every worker of the cluster must have simplexcub 9.9; got '0.1.0' from tcp://127.0.0.1:" in err[0]

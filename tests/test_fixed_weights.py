@@ -148,3 +148,9 @@ def test_the_exact_decision_is_told_when_the_search_fails_as_well() -> None:
     found = sc.solve(flat(2), 10, equal_weights=True, budget=3)
     assert found.degree == 11
     assert found.provenance.method.startswith("orbit search with equal weights; 10 nodes of equal weight and degree 10")
+
+
+@pytest.mark.parametrize("largest", [0, -4, 1001])
+def test_integer_weights_have_a_range(largest: int) -> None:
+    with pytest.raises(InputError, match=f"integer_weights must be an integer from 1 to 1000; got {largest}"):
+        sc.solve(flat(3), 3, integer_weights=largest)

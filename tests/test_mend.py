@@ -202,3 +202,12 @@ def test_one_wrong_digit_of_a_weight_is_found_by_the_sum():
     assert corrected(replace(known, weight_decimals=tuple(weights)), flat(3), 3) == known
     assert corrected(replace(known, weight_decimals=tuple(weights)), hilbert_schmidt(3), 3) is None
     assert corrected(known, flat(3), 3) is None  # nothing is wrong with any sum
+
+
+def test_a_table_that_averages_nothing_is_not_verified(radon, capsys):
+    text = radon.read_text(encoding="utf-8").replace("0.470142064105115", "0.470242064105115", 1)
+    radon.write_text(text, encoding="utf-8")
+    assert main(["verify", str(radon), "--measure", "flat", "-N", "3"]) == 1
+    out, err = capsys.readouterr()
+    assert "verified  no" in out
+    assert "not even degree 1" in err

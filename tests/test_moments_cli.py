@@ -135,8 +135,8 @@ def test_json_and_csv_tables_read_back(call: Call) -> None:
 @pytest.mark.parametrize(
     ("arguments", "words"),
     [
-        (HS4, ("one of --exponents", "is required", "got none")),
-        ((*HS4, "--entropy", "--power", "2"), ("is required", "--power and --entropy")),
+        (HS4, ("exactly one of --exponents", "must be given", "got none")),
+        ((*HS4, "--entropy", "--power", "2"), ("must be given", "--power and --entropy")),
         ((*HS4, "--entropy", "--to", "csv"), ("must come with --table",)),
         ((*HS4, "--entropy", "-o", "x.csv"), ("must come with --table",)),
         ((*HS4, "--entropy", "--route", "loop"), ("--route must come with",)),

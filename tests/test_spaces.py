@@ -201,9 +201,9 @@ def test_the_chamber_as_a_measure():
 def test_what_the_spaces_refuse():
     with pytest.raises(InputError, match=r"ordered moments .* got bures\(N=3\)\. .* no exact moments .* symmetric"):
         solve(bures(3), 4, space="ordered")
-    with pytest.raises(InputError, match="symmetry must be full for rules of space symmetric; got cyclic"):
+    with pytest.raises(InputError, match="rules of space symmetric must be left their own symmetry; got cyclic"):
         solve(flat(3), 4, space="symmetric", symmetry="cyclic")
-    with pytest.raises(InputError, match="symmetry must be full for rules of space ordered; got cyclic"):
+    with pytest.raises(InputError, match="rules of space ordered must be left their own symmetry; got cyclic"):
         solve(flat(3), 4, space="ordered", symmetry="cyclic")
     with pytest.raises(InputError, match="space must be one of all, symmetric, ordered; got some"):
         solve(flat(3), 4, space="some")

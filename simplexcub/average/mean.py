@@ -152,9 +152,12 @@ def average(
 
 
 def _space(integrand: Integrand, f: Function, measure: Measure, asked: str) -> Space:
+    own = getattr(f, "space", None)
+    if asked == "symmetric" and own is not None and own != asked:
+        remedy = "Take space all, or ordered for the ordered spectrum."
+        raise InputError("space symmetric must be asked of a function that does not mind the order", f, remedy)
     if asked != "auto":
         return asked  # type: ignore[return-value]
-    own = getattr(f, "space", None)
     if isinstance(measure, Ordered):
         return "symmetric" if own == "symmetric" else "ordered"
     if own in SPACES:

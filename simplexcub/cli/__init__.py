@@ -22,10 +22,10 @@ from contextlib import suppress
 from difflib import get_close_matches
 from importlib import import_module
 
-from simplexcub import __version__
 from simplexcub.cli.options import Parser
 from simplexcub.cli.speech import complain, tolerate_narrow_encodings
 from simplexcub.errors import InputError, SimplexcubError
+from simplexcub.version import VERSION
 
 COMMANDS = {
     "moments": "exact mean of a monomial, as a fraction",
@@ -85,7 +85,7 @@ def _dispatch(argv: list[str]) -> int:
         example="simplexcub solve hilbert-schmidt -N 3 -t 7",
         more=f"commands:\n{listing}\n\n'simplexcub COMMAND --help' explains one command.",
     )
-    parser.add_argument("--version", action="version", version=f"simplexcub {__version__}")
+    parser.add_argument("--version", action="version", version=f"simplexcub {VERSION}")
     parser.add_argument("command", metavar="COMMAND", help="one of the commands below")
     name = parser.parse_known_args(argv)[0].command  # whatever follows belongs to the command
     near = get_close_matches(name, COMMANDS, n=1)

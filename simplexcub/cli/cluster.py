@@ -8,8 +8,8 @@ from concurrent.futures import Executor
 from contextlib import contextmanager
 from typing import Any
 
-import simplexcub
 from simplexcub.errors import InputError
+from simplexcub.version import VERSION
 
 _PATIENCE = "10s"
 
@@ -42,16 +42,16 @@ def cluster_executor(address: str) -> Iterator[tuple[Executor, int]]:
 
 def package_version() -> str:
     """Asked of every worker."""
-    return simplexcub.__version__
+    return VERSION
 
 
 def _threads(client: Any) -> int:
     """How many tasks the cluster runs at a time, once every worker is known to have this version of the package."""
     answers = client.run(package_version, on_error="return")
     for worker, answer in answers.items():
-        if answer != simplexcub.__version__:
+        if answer != VERSION:
             raise InputError(
-                f"every worker of the cluster must have simplexcub {simplexcub.__version__}",
+                f"every worker of the cluster must have simplexcub {VERSION}",
                 f"{answer!r} from {worker}",
             )
     if not answers:

@@ -52,7 +52,7 @@ def run(args: argparse.Namespace) -> int:
     given = [f"--{name.replace('_', '-')}" for name in _QUANTITIES if _is_given(getattr(args, name))]
     if len(given) != 1 and not (args.ordered and not given):
         names = ", ".join(f"--{name.replace('_', '-')}" for name in _QUANTITIES)
-        raise InputError(f"one of {names} is required", " and ".join(given) or "none")
+        raise InputError(f"exactly one of {names} must be given", " and ".join(given) or "none")
     if args.table is None and (args.to or args.output):
         raise InputError("--to and -o must come with --table", "no --table")
     if args.route and args.exponents is None and args.power_sums is None:

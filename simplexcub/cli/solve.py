@@ -47,7 +47,7 @@ def add_options(parser: argparse.ArgumentParser) -> None:
     )
     parser.add_argument("--equal-weights", action="store_true", help="the weight 1/M for each of M nodes")
     parser.add_argument(
-        "--integer-weights", type=whole, default=0, metavar="K", help="weights that are integers up to K over their sum"
+        "--integer-weights", type=whole, metavar="K", help="weights that are integers up to K over their sum"
     )
     parser.add_argument(
         "--also",

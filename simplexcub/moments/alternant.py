@@ -120,11 +120,6 @@ def _mean(
     return Fraction(sum(top * (common // bottom) for top, bottom in terms) * q**degree, common * trace * share)
 
 
-def shape_mean(nu: tuple[int, ...], n: int, c: Fraction, kernel: Kernel) -> Fraction:
-    """One term of the sum for a fixed trace; it is also the mean of the Schur function s_ν."""
-    return _mean({nu: 1}, 1, sum(nu), n, c, kernel)
-
-
 def _equal_runs(nu: tuple[int, ...]) -> Iterator[tuple[int, int, int]]:
     """First and last row of each run of equal parts, and the part."""
     first = 0

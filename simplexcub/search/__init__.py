@@ -10,7 +10,6 @@ from pathlib import Path
 import numpy as np
 from mpmath import mp, mpf
 
-import simplexcub
 from simplexcub.errors import InputError, NothingFound
 from simplexcub.invariants import invariant_basis
 from simplexcub.measures import Chamber, Measure, ordered
@@ -31,6 +30,7 @@ from simplexcub.search.system import FloatArray
 from simplexcub.search.wish import Wish, fixed_integers, make_wish, with_claims
 from simplexcub.search.workers import Workers, local_workers
 from simplexcub.symmetry import Group, Spectra, spectra
+from simplexcub.version import VERSION
 
 __all__ = ["Chebyshev", "KnownMean", "Progress", "chebyshev", "embed", "product_rule", "solve"]
 
@@ -48,7 +48,7 @@ def solve(
     space: Space = "all",
     symmetry: str = "full",
     equal_weights: bool = False,
-    integer_weights: int = 0,
+    integer_weights: int | None = None,
     also: str | KnownMean | Sequence[str | KnownMean] = (),
     include: str | Sequence[str] = (),
     digits: int = 50,
@@ -80,8 +80,8 @@ def solve(
         ``all`` has a choice.
     equal_weights : bool
         Every node has the weight 1/M. For N = 2 it is decided exactly which numbers of nodes up to degree + 1 serve.
-    integer_weights : int
-        Weights are integers up to this one, over their sum; 0 leaves them free.
+    integer_weights : int, optional
+        Weights are integers up to this one, over their sum.
     also : str or sequence of str or KnownMean
         Functions to average exactly besides the polynomials: ``entropy`` is Σ λ ln λ, ``entropy-K`` Σ λ^K ln λ,
         ``power-Q`` Σ λ^Q, and a :class:`KnownMean` any symmetric function with a known mean.
@@ -124,7 +124,7 @@ def solve(
     """
     _check(degree=degree, space=space, digits=digits, seed=seed, budget=budget, jobs=jobs)
     if space != "all" and symmetry not in ("full", "best", *(("none",) if space == "ordered" else ())):
-        raise InputError(f"symmetry must be full for rules of space {space}", symmetry, "Leave --symmetry out.")
+        raise InputError(f"rules of space {space} must be left their own symmetry", symmetry, "Leave it out.")
     wish = make_wish(measure, degree, symmetry, include, also, fixed_integers(equal_weights, integer_weights))
     if space != "all" and not wish.plain:
         remedy = "Ask for space all; its fully symmetric rules can be folded into ordered spectra."
@@ -196,7 +196,7 @@ def product_rule(measure: Measure, degree: int, *, digits: int = 50, seed: int =
 
 def _provenance(seed: int, method: str) -> Provenance:
     today = datetime.datetime.now(datetime.UTC).date().isoformat()
-    return Provenance(f"simplexcub {simplexcub.__version__}", seed, today, method)
+    return Provenance(f"simplexcub {VERSION}", seed, today, method)
 
 
 def _search(

@@ -15,6 +15,7 @@ import math
 from collections.abc import Sequence
 from dataclasses import dataclass, replace
 from fractions import Fraction
+from functools import reduce
 
 from mpmath import mp, mpf
 
@@ -134,17 +135,22 @@ def chebyshev_nodes(found: Chebyshev, digits: int) -> list[mpf]:
     # Coefficients of both signs cancel by about as many digits as they have.
     lost = max(abs(c) for c in p).bit_length() * 0.302 - abs(p[-1]).bit_length() * 0.302
     with mp.workdps(math.ceil(digits + 20 + lost)):
-        falling, slope = p[::-1], derivative(p)[::-1]
+        slope = derivative(p)
         for interval in intervals:
             low, high = narrow(p, interval, _START_BITS + p[-1].bit_length())
             x = (mpf(low.numerator) / low.denominator + mpf(high.numerator) / high.denominator) / 2
             while low != high:
-                change = mp.polyval(falling, x) / mp.polyval(slope, x)
+                change = _value(p, x) / _value(slope, x)
                 x -= change
                 if abs(change) < mpf(10) ** (-(digits + 10)):
                     break
             nodes.append(x)
     return nodes
+
+
+def _value(rising: Sequence[int], x: mpf) -> mpf:
+    """A polynomial with coefficients in rising order, by Horner's rule."""
+    return reduce(lambda value, c: value * x + c, reversed(rising), mpf(0))
 
 
 def chebyshev_rule(measure: Measure, degree: int, *, digits: int, provenance: Provenance) -> Rule:

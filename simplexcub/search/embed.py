@@ -87,7 +87,7 @@ def embed(rule: Rule) -> Rule:
             exact = _refined(basis, orbits, weights, rule)
             return replace(rule, embedded=_written(exact, orbits, rule, degree), verification=None)
     raise NothingFound(
-        f"embedded weights for {rule}",
+        f"embedded weights for this rule of degree {rule.degree}",
         "even degree 0 leaves no choice, since the rule has one orbit only",
         "Take a rule of higher degree.",
     )

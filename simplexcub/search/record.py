@@ -39,7 +39,9 @@ class Record:
             with tempfile.TemporaryFile(dir=self._folder):
                 pass
         except OSError as error:
-            raise InputError("the search folder must be a folder that can be written", folder, str(error)) from None
+            raise InputError(
+                "the search folder must be a folder that can be written", folder, f"{error.strerror}. Choose another."
+            ) from None
 
     def _path(self, task: Chunk | Leg) -> Path:
         return self._folder / f"{task.key}.npz"

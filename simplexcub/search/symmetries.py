@@ -15,6 +15,7 @@ _PROMISE = {
 }
 _PROMISE_ELSE = ("stabiliser", "none", "full")
 
+_MOST_COMPONENTS = 10
 _MOST_FULL, _MOST = 600, 2000  # polynomials, beyond which a search would take hours to set up or fill the memory
 
 
@@ -22,6 +23,8 @@ def within_reach(group: Group, degree: int) -> bool:
     """Whether the polynomials that such a search works on are few enough."""
     if isinstance(group, Spectra):
         return True
+    if group.n > _MOST_COMPONENTS:
+        return False
     count = comb(degree + group.n - 1, group.n - 1)
     return count // factorial(group.n) <= _MOST_FULL if group.is_full else count <= _MOST
 

@@ -40,10 +40,13 @@ class Wish:
     also: tuple[str | KnownMean, ...] = ()
 
     def __post_init__(self) -> None:
+        remedy = "Leave one of them out."
         if self.integers and self.also:
-            raise InputError("weights must be free where more than polynomials is averaged exactly", "fixed weights")
+            raise InputError(
+                "weights must be free where more than polynomials is averaged exactly", "fixed weights", remedy
+            )
         if self.integers and self.include:
-            raise InputError("weights must be free where nodes are chosen", "fixed weights", "Leave one of them out.")
+            raise InputError("weights must be free where nodes are chosen", "fixed weights", remedy)
 
     @property
     def plain(self) -> bool:
@@ -116,12 +119,14 @@ def make_wish(
 ) -> Wish:
     """The wish from the arguments of a search; a symmetric rule on two components has an odd degree anyway."""
     sets = (include,) if isinstance(include, str) else tuple(include)
+    if len(set(sets)) < len(sets):
+        raise InputError("every set of nodes in include must be named once", ", ".join(sets))
     functions = (also,) if isinstance(also, str | KnownMean) else tuple(also)
     odd = measure.N == 2 and measure.is_symmetric and symmetry == "full"
     return Wish(measure, degree | 1 if odd else degree, sets, integers, functions)
 
 
-def fixed_integers(equal_weights: bool, integer_weights: int) -> int:
+def fixed_integers(equal_weights: bool, integer_weights: int | None) -> int:
     """The largest integer that a fixed weight may be: 1 for equal weights, 0 for free ones.
 
     Raises
@@ -129,11 +134,13 @@ def fixed_integers(equal_weights: bool, integer_weights: int) -> int:
     InputError
         Both are asked for, or an integer out of range.
     """
-    if isinstance(integer_weights, bool) or not isinstance(integer_weights, int) or not 0 <= integer_weights <= 1000:
-        raise InputError("integer_weights must be an integer between 0 and 1000", integer_weights)
-    if equal_weights and integer_weights:
+    if integer_weights is None:
+        return int(equal_weights)
+    if isinstance(integer_weights, bool) or not isinstance(integer_weights, int) or not 1 <= integer_weights <= 1000:
+        raise InputError("integer_weights must be an integer from 1 to 1000", integer_weights)
+    if equal_weights:
         raise InputError("weights must be equal or integers, not both", f"equal and up to {integer_weights}")
-    return 1 if equal_weights else integer_weights
+    return integer_weights
 
 
 def with_claims(rule: Rule, found: Found) -> Rule:

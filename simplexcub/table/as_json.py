@@ -12,6 +12,7 @@ from simplexcub.measures import Measure
 from simplexcub.rule import Rule
 from simplexcub.table.foreign import foreign_rule
 from simplexcub.table.record import from_record, to_record
+from simplexcub.table.sanity import LONGEST_NUMBER
 
 FORMAT = "simplexcub-rule"
 VERSION = 1
@@ -74,7 +75,9 @@ def _check_checksum(record: Mapping[str, Any], where: str) -> None:
     except UnicodeEncodeError:
         raise TableError(f"{where}: text must be Unicode", "an unpaired surrogate", remedy) from None
     if record["sha256"] != found:
-        raise TableError(f"{where}: sha256 must match the content, {found[:12]}…", repr(record["sha256"])[:15], remedy)
+        raise TableError(
+            f"{where}: sha256 must match the content, {found[:12]}…", f"{str(record['sha256'])[:12]}…", remedy
+        )
 
 
 def _load(text: str, where: str) -> dict[str, Any]:
@@ -90,7 +93,9 @@ def _load(text: str, where: str) -> dict[str, Any]:
         raise TableError(f"{where}: numbers must be finite", constant)
 
     try:
-        record = json.loads(text, object_pairs_hook=unique, parse_constant=refuse, parse_float=_Literal)
+        record = json.loads(
+            text, object_pairs_hook=unique, parse_constant=refuse, parse_float=_Literal, parse_int=_integer
+        )
     except json.JSONDecodeError as error:
         cut = not text[error.pos :].strip() or error.msg.startswith("Unterminated")
         found = "a file that is cut short" if cut else f"{error.msg} at line {error.lineno}, column {error.colno}"
@@ -102,6 +107,12 @@ def _load(text: str, where: str) -> dict[str, Any]:
     if not isinstance(record, dict):
         raise TableError(f"{where} must hold one JSON object", type(record).__name__)
     return record
+
+
+def _integer(text: str) -> int:
+    if len(text) > LONGEST_NUMBER:  # Python's own limit can be lifted by any library that is loaded
+        raise ValueError("a number of too many digits")
+    return int(text)
 
 
 class _Literal(float):

@@ -8,7 +8,6 @@ from collections import Counter
 from collections.abc import Sequence
 from fractions import Fraction
 
-from simplexcub import __version__
 from simplexcub.decimals import to_decimal
 from simplexcub.errors import InputError, NothingFound
 from simplexcub.measures import Measure
@@ -21,6 +20,7 @@ from simplexcub.verify.proof import prove
 from simplexcub.verify.proof_orbits import find_structure
 from simplexcub.verify.proof_result import Proof
 from simplexcub.verify.proof_snap import symmetrised
+from simplexcub.version import VERSION
 
 Node = tuple[Fraction, ...]
 
@@ -104,7 +104,7 @@ def _printed_in_full(rule: Rule, measure: Measure, proof: Proof, digits: int) ->
         proof.degree,
         tuple(tuple(to_decimal(x, digits) for x in node) for node in nodes),
         tuple(to_decimal(w, digits) for w in weights),
-        Provenance(f"simplexcub {__version__}", 0, today, f"mended, {source}"),
+        Provenance(f"simplexcub {VERSION}", 0, today, f"mended, {source}"),
         space=rule.space,
         symmetry="full" if orbits else "none",
         equal_weights=rule.equal_weights and len(set(weights)) == 1,
