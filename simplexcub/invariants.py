@@ -26,6 +26,7 @@ FloatArray = NDArray[np.float64]
 IntArray = NDArray[np.object_]  # Python integers of any length
 
 _CHUNK_POINTS = 4096
+_NOISIEST = 1e-10  # the recurrence in power sums loses digits with the degree; beyond, Jacobi polynomials are symmetrised
 _NOISE_POINTS = 6
 FEW_COMPONENTS = 3  # spectra of more take the basis of power sums
 
@@ -151,7 +152,11 @@ def _to_doubles(integers: IntArray, bits: int) -> FloatArray:
 @lru_cache(maxsize=32)
 def invariant_basis(group: Group, degree: int) -> Basis:
     """The invariants of `group` up to `degree`, built once per process."""
-    return FullInvariants(group.n, degree) if group.is_full else SubgroupInvariants(group, degree)
+    if group.is_full:
+        full = FullInvariants(group.n, degree)
+        if full.noise < _NOISIEST:
+            return full
+    return SubgroupInvariants(group, degree)
 
 
 def basis_for(group: Group, degree: int, measure: Measure) -> Basis:

@@ -27,7 +27,7 @@ _SHAKES = 4  # times a level is shaken before the walk gives up
 _BATCH = 8  # candidates tried at once, those with the least to lose first
 _ITERATIONS = 50
 _RICHNESS = (5, 20, 80)  # candidates per equation and orbit type offered to the start, more where fewer do not do
-_SOLVED, _NO_WEIGHT = 1e-8, 1e-14
+_SOLVED, _SOLVED_NOISE, _NO_WEIGHT = 1e-8, 100.0, 1e-14  # residual of a start, absolute and in errors of the functions
 _LEAST = 1e-3  # weight of a chosen orbit in the start
 
 
@@ -44,7 +44,7 @@ def tchakaloff_start(problem: Problem, rng: np.random.Generator) -> tuple[Counts
         least = np.concatenate([np.full(len(v), _LEAST * isinstance(t, Chosen)) for t, v in values.items()])
         weights, residual = nnls(columns, system.means - columns @ least, maxiter=20 * columns.shape[1])
         weights = weights + least
-        if residual > _SOLVED:
+        if residual > max(_SOLVED, _SOLVED_NOISE * basis.noise):
             continue
         start = 0
         for t, v in values.items():

@@ -30,7 +30,7 @@ def refine(system: System, u: NDArray[np.float64], digits: int) -> Orbits | None
     -------
     list of (orbit type, distinct coordinates, orbit weight), mpmath numbers of a few digits more than asked.
     """
-    bits = math.ceil((digits + 15) * math.log2(10))
+    bits = math.ceil((digits + 30) * math.log2(10))  # the recurrences lose some at high degree
     inverse = np.linalg.pinv(system.evaluate(u[None])[1][0], rcond=_SINGULAR)
     means = system.basis.means_fixed(system.problem.measure, bits)
     exact = np.array([int(math.ldexp(x, 60)) << (bits - 60) for x in u], dtype=object)
