@@ -69,9 +69,15 @@ def test_the_status_is_the_worst_and_every_file_is_tried(
 
 
 def test_the_measure_is_held_against_each(call: Call, mine: Path) -> None:
-    status, out, _ = call("verify", "mine/a.json", "mine/b.json", "--measure", "dirichlet", "--alpha", "2,2,2")
-    assert status == 1
-    assert out[-1] == "0 of 2 verified"
+    for name, degree in (("a", 3), ("b", 5)):
+        rule = load(flat(3), degree=degree)
+        rows = (",".join([*node, w]) for node, w in zip(rule.node_decimals, rule.weight_decimals, strict=True))
+        (mine / f"{name}.csv").write_text("\n".join(rows), encoding="utf-8")
+    status, out, _ = call("verify", "mine/a.csv", "mine/b.csv", "--measure", "flat", "-N", 3)
+    assert status == 0
+    assert [line.split(":")[1].split(",")[0] for line in out[:2]] == [" exact to degree 3", " exact to degree 5"]
+    status, out, err = call("verify", "mine/a.json", "mine/b.json", "--measure", "dirichlet", "--alpha", "2,2,2")
+    assert (status, out, len(err)) == (2, ["0 of 2 verified"], 2)
 
 
 @pytest.mark.parametrize("options", [("--mend", "out.json"), ("--states",), ("--measure", "any")])

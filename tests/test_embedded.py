@@ -140,7 +140,7 @@ def test_rounded_second_weights_are_those_of_the_table_to_so_many_digits(tmp_pat
 def test_second_weights_are_checked_again_when_rounded() -> None:
     rule = by_name("flat/N3/all-full-embedded-t04-6")
     assert rule.embedded is not None
-    wrong = replace(rule, embedded=replace(rule.embedded, degree=3))  # they are exact to degree 2
+    wrong = replace(rule, embedded=replace(rule.embedded, degree=3))  # they are exact to degree 1
     with pytest.raises(InputError, match="embedded weights must hold when rounded to 9 digits; got the embedded"):
         rounded(wrong, 9)
 
