@@ -43,7 +43,7 @@ def add_options(parser: argparse.ArgumentParser) -> None:
     )
     parser.add_argument("--digits", type=whole, metavar="D", help="round to D significant digits, and check again")
     parser.add_argument("--standalone", action="store_true", help="a LaTeX document that compiles as it is")
-    add_measure(parser, option=True)
+    add_measure(parser, option=True, use="measure of tables that name none")
     parser.epilog = f"Formats that hold several rules in one file: {several}.\n\n{parser.epilog}"
 
 
