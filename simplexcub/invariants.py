@@ -26,7 +26,9 @@ FloatArray = NDArray[np.float64]
 IntArray = NDArray[np.object_]  # Python integers of any length
 
 _CHUNK_POINTS = 4096
-_NOISIEST = 1e-10  # the recurrence in power sums loses digits with the degree; beyond, Jacobi polynomials are symmetrised
+_NOISIEST = (
+    1e-10  # the recurrence in power sums loses digits with the degree; beyond, Jacobi polynomials are symmetrised
+)
 _NOISE_POINTS = 6
 FEW_COMPONENTS = 3  # spectra of more take the basis of power sums
 

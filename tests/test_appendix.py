@@ -18,9 +18,11 @@ from simplexcub.decimals import significant_digits
 from simplexcub.errors import InputError
 from simplexcub.measures import bures, flat, hilbert_schmidt
 from simplexcub.rule import Rule
-from simplexcub.table import load, parse, render
+from simplexcub.table import catalogue, load, parse, render
 from simplexcub.table.appendix import appendix
 from simplexcub.table.as_latex import fragment
+from simplexcub.table.describe import heading
+from simplexcub.table.overview import by_name, name_of
 from simplexcub.table.rounding import rounded, rounded_text
 from simplexcub.table.sources import numbered, sources
 from simplexcub.table.tex import SIZES, number, prose
@@ -159,6 +161,32 @@ def test_an_appendix_is_sorted_and_has_an_overview() -> None:
     assert [line.split(" & ")[1] for line in overview.strip().splitlines()] == ["2", "5", "7"]
     assert r"\documentclass" not in text
     assert appendix(rules, standalone=True).count(r"\documentclass") == 1
+
+
+def test_what_is_special_tells_rules_of_one_degree_apart() -> None:
+    names = ("flat/N3/all-full-t04-6", "flat/N3/all-full-embedded-t04-6", "flat/N3/all-full-equal-t02-3")
+    rules = [by_name(name) for name in names]
+    text = appendix(rules)
+    overview = text.split(r"\endlastfoot")[1].split(r"\end{longtable}")[0].strip().splitlines()
+    cells = [line.removesuffix(r" \\").split(" & ") for line in overview]
+    assert [(line[1], line[-1]) for line in cells] == [("2", "equal weights"), ("4", ""), ("4", "embedded to degree 1")]
+    captions = re.findall(r"\\caption\{Flat measure, \$N=3\$: (.*?), exact for", text)
+    assert captions == [
+        "3 nodes in 1 orbit, equal weights",
+        "6 nodes in 2 orbits",
+        "6 nodes in 2 orbits, embedded to degree 1",
+    ]
+    assert "special" not in appendix([rules[0], load(flat(3), degree=5)])
+    assert heading(rules[1]) == "Flat measure, N = 3, degree 4, 6 nodes, embedded to degree 1"
+    assert heading(rules[2]) == "Flat measure, N = 3, degree 2, 3 nodes, equal weights"
+
+
+@needs_tex
+def test_an_overview_with_every_kind_fits_a_plain_article(tmp_path: Path) -> None:
+    names = [n for n in map(name_of, catalogue()) if "/N3/" in n and re.search("-(equal|embedded|also)-.*t0[1-5]", n)]
+    rules = [by_name(name) for name in [*names, "bures/N4/all-full-t03-8"] if name in map(name_of, catalogue())]
+    assert len({rule.measure.family for rule in rules}) > 1
+    assert "Overfull" not in compiled(article(appendix(rules)), tmp_path)
 
 
 def test_numbers_break_only_where_they_must() -> None:

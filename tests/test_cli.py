@@ -214,6 +214,18 @@ def test_help_explains_every_command_with_an_example(call: Call, command: str) -
     assert out[-1].startswith(f"  simplexcub {command} ")
 
 
+@pytest.mark.parametrize(
+    ("command", "use"),
+    [
+        ("verify", "check against this measure: flat,"),
+        ("export", "measure of tables that name none: flat,"),
+        ("draw", "measure of --convergence, or of a table that names none: flat,"),
+    ],
+)
+def test_help_says_what_the_measure_is_for(call: Call, command: str, use: str) -> None:
+    assert f"--measure MEASURE {use}" in " ".join(" ".join(call(command, "--help")[1]).split())
+
+
 def test_exact_values_survive_the_printing(call: Call) -> None:
     _, out, _ = call("moments", *HS3, "--exponents", "4,1,2", "--digits", 200)
     fraction, decimal = out[0].split(" = ")[1].split(" ≈ ")

@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 import json
+import re
 from dataclasses import replace
 from fractions import Fraction
 from pathlib import Path
@@ -13,12 +14,15 @@ import pytest
 from conftest import Call
 
 import simplexcub as sc
+from simplexcub.decimals import significant_digits
 from simplexcub.embedded import Embedded
 from simplexcub.errors import InputError, NothingFound, TableError
 from simplexcub.measures import Measure, bures, dirichlet, flat, hilbert_schmidt
 from simplexcub.rule import Rule
-from simplexcub.table import encode, render
+from simplexcub.table import FORMATS, encode, render
+from simplexcub.table.overview import by_name
 from simplexcub.table.reading import parse
+from simplexcub.table.rounding import rounded
 from simplexcub.verify.residuals import partitions
 
 CASES: list[tuple[Measure, int, str | None]] = [
@@ -105,6 +109,40 @@ def test_formats_for_people_show_the_second_column(to: str) -> None:
     text = render(rule, to).replace(r"\,", "").replace(" ", "")
     assert all(w in text for w in rule.embedded.weight_decimals)
     assert "secondsetofweights" in text or "weightintheembeddedrule" in text
+
+
+def places(text: str) -> list[str]:
+    """The significant digits of every decimal in a text, its blocks joined."""
+    joined = re.sub(r"(?<=\d)(?:\\,|[ \n]+)(?=\d{5})", "", text)
+    return [found.lstrip("0") for found in re.findall(r"\b0\.(\d+)", joined)]
+
+
+@pytest.mark.parametrize("to", [to for to, form in FORMATS.items() if to != "npz"])
+def test_rounding_reaches_the_second_weights_in_every_format(to: str) -> None:
+    rule = by_name("flat/N3/all-full-embedded-t04-6")
+    assert max(map(len, places(render(rule, to)))) > 10
+    short = rounded(rule, 10)
+    assert max(map(len, places(render(short, to)))) == 10
+    assert sc.verify(short).holds
+
+
+def test_rounded_second_weights_are_those_of_the_table_to_so_many_digits(tmp_path: Path) -> None:
+    rule = by_name("flat/N3/all-full-embedded-t04-6")
+    assert rule.embedded is not None
+    expected = [Fraction(w) for w in rule.embedded.weight_decimals]
+    path = tmp_path / "short.npz"
+    path.write_bytes(encode(rounded(rule, 12), "npz"))
+    texts = np.load(path)["embedded_weight_decimals"]
+    assert max(significant_digits(text) for text in texts) == 12
+    assert all(abs(Fraction(str(t)) - w) <= Fraction(1, 2 * 10**12) for t, w in zip(texts, expected, strict=True))
+
+
+def test_second_weights_are_checked_again_when_rounded() -> None:
+    rule = by_name("flat/N3/all-full-embedded-t04-6")
+    assert rule.embedded is not None
+    wrong = replace(rule, embedded=replace(rule.embedded, degree=3))  # they are exact to degree 1
+    with pytest.raises(InputError, match="embedded weights must hold when rounded to 9 digits; got the embedded"):
+        rounded(wrong, 9)
 
 
 def test_programs_can_use_the_second_column(tmp_path: Path) -> None:

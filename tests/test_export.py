@@ -136,6 +136,14 @@ def test_the_ending_chooses_the_format(call: Call, files: Path) -> None:
     assert "neither --to nor -o" in err[0]
 
 
+@pytest.mark.parametrize("folder", ["new/", "mine"])
+def test_a_folder_has_no_ending_and_needs_the_format(call: Call, files: Path, folder: str) -> None:
+    status, out, err = call("export", "mine/a.json", "-o", folder)
+    assert (status, out, len(err)) == (2, [], 1)
+    assert f"a folder must come with --to; got -o {folder}. --to is one of json, " in err[0]
+    assert not Path("new").exists()
+
+
 def test_up_to_leaves_out_higher_degrees(call: Call, files: Path) -> None:
     _, out, _ = call("export", "mine/a.json", "mine/b.json", "--to", "markdown", "--up-to", 4)
     assert [line for line in out if line.startswith("## ")] == ["## Flat measure, N = 3, degree 3, 4 nodes"]

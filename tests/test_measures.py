@@ -5,6 +5,7 @@ from __future__ import annotations
 import math
 import pickle
 import re
+import unicodedata
 from collections.abc import Callable
 from fractions import Fraction
 
@@ -66,8 +67,9 @@ def test_every_family_has_a_name() -> None:
 def evaluator(text: str) -> Callable[[tuple[float, ...]], float]:
     """The printed density as a function: the notation turned into arithmetic, a blank meaning a product."""
     names = {"gamma": math.gamma, "abs": abs, "__builtins__": {}}
-    for shown, plain in (("−", "-"), ("²", "**2"), ("^", "**"), ("·", " "), ("Γ", "gamma")):
+    for shown, plain in (("−", "-"), ("^", "**"), ("·", " "), ("Γ", "gamma")):
         text = text.replace(shown, plain)
+    text = re.sub("[⁰¹²³⁴⁵⁶⁷⁸⁹]+", lambda match: f"**{unicodedata.normalize('NFKC', match[0])}", text)
     text = re.sub(r"\|([^|]*)\|", r"abs(\1)", text)
     text = re.sub(r"[λx](\d+)", lambda match: f"x[{int(match[1]) - 1}]", text)
 
@@ -108,14 +110,30 @@ def test_printed_densities_integrate_to_one_for_three(measure: Measure) -> None:
     assert abs(mass - 1) < 1e-4
 
 
+@pytest.mark.parametrize(
+    ("measure", "text"),
+    [
+        (dirichlet([1, 2, 3]), "Γ(6)/(Γ(1) Γ(2) Γ(3)) · λ2 λ3²"),
+        (dirichlet(["1/2", 13]), "Γ(27/2)/(Γ(1/2) Γ(13)) · λ1^(-1/2) λ2¹²"),
+        (induced(2, 4), "210 λ1² λ2² (λ1−λ2)²"),  # 1/(B(3, 3) − 4 B(4, 4))
+        (beta_ensemble(2, 3, 2), "Γ(9) Π_(j<2) Γ(5/2)/(Γ(3+3/2j) Γ(5/2+3/2j)) · λ1² λ2² |λ1−λ2|³"),
+        (bures(3), "Γ(9/2)/Γ(1/2)³ · "),
+        (hilbert_schmidt(16), "Γ(256)/(Π_(j<16) Γ(16−j) Γ(17−j)) · Π_(i<j) (λi−λj)²"),
+    ],
+    ids=str,
+)
+def test_powers_and_quotients_are_printed_in_one_way(measure: Measure, text: str) -> None:
+    assert text in measure.density()[0]
+
+
 def test_densities_of_many_eigenvalues_are_short_and_right() -> None:
     for measure in (induced(1000, 1001), bures(1000), flat(1000), orthogonal(500, 501)):
         assert all(len(text) < 200 for text in measure.density())
     seven = induced(7, 9).density()[0]
     constant = math.gamma(63) / math.prod(math.gamma(9 - j) * math.gamma(8 - j) for j in range(7))
-    assert seven.startswith("Γ(63)/Π_(j<7) Γ(9−j) Γ(8−j) Π_i λi^2 ")
+    assert seven.startswith("Γ(63)/(Π_(j<7) Γ(9−j) Γ(8−j)) · Π_i λi² Π_(i<j) (λi−λj)²")
     assert math.isclose(constant, float(Induced(7, 9)._constant()), rel_tol=1e-12)
-    assert bures(7).density()[0].startswith("Γ(49/2) Π_(j<7) Γ(1+2j)/(Γ(1/2+j) Γ(1+j) Γ(2+j)) Π_i λi^(-1/2) ")
+    assert bures(7).density()[0].startswith("Γ(49/2) Π_(j<7) Γ(1+2j)/(Γ(1/2+j) Γ(1+j) Γ(2+j)) · Π_i λi^(-1/2) ")
     product = math.prod(
         math.gamma(1 + 2 * j) / (math.gamma(0.5 + j) * math.gamma(1 + j) * math.gamma(2 + j)) for j in range(7)
     )

@@ -28,7 +28,7 @@ def add_options(parser: argparse.ArgumentParser) -> None:
         metavar="FUNCTION",
         help=f"draw the errors of the shipped rules for --measure on one of {names}",
     )
-    add_measure(parser, option=True)
+    add_measure(parser, option=True, use="measure of --convergence, or of a table that names none")
     more = "with --convergence:\n  simplexcub draw --convergence von-neumann --measure flat -N 3 -o errors.svg"
     parser.epilog = f"{more}\n\n{parser.epilog}"
 

@@ -43,7 +43,7 @@ def add_options(parser: argparse.ArgumentParser) -> None:
     )
     parser.add_argument("--digits", type=whole, metavar="D", help="round to D significant digits, and check again")
     parser.add_argument("--standalone", action="store_true", help="a LaTeX document that compiles as it is")
-    add_measure(parser, option=True)
+    add_measure(parser, option=True, use="measure of tables that name none")
     parser.epilog = f"Formats that hold several rules in one file: {several}.\n\n{parser.epilog}"
 
 
@@ -51,7 +51,7 @@ def run(args: argparse.Namespace) -> int:
     """Read, verify where a table carries no verification, and write."""
     to = _format(args)
     output = Path(args.output) if args.output else None
-    into_folder = output is not None and (output.is_dir() or args.output.endswith("/"))
+    into_folder = output is not None and _is_folder(args.output)
     if output is not None and not into_folder:
         require_writable(output)
     paths, left_out = select(args.files)
@@ -91,10 +91,16 @@ def _format(args: argparse.Namespace) -> str:
         raise InputError(
             "export must be told the format", "neither --to nor -o", f"--to is one of {', '.join(FORMATS)}."
         )
+    if args.to is None and _is_folder(args.output):
+        raise InputError("a folder must come with --to", f"-o {args.output}", f"--to is one of {', '.join(FORMATS)}.")
     to: str = args.to if args.to is not None else format_of(args.output)
     if args.standalone and to != "latex":
         raise InputError("--standalone must come with --to latex", to)
     return to
+
+
+def _is_folder(path: str) -> bool:
+    return path.endswith("/") or Path(path).is_dir()
 
 
 def _checked(rule: Rule, path: Path, show: ProgressLine) -> tuple[Rule, bool]:

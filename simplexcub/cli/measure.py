@@ -11,11 +11,16 @@ from simplexcub.measures import FAMILIES, Measure, from_parameters
 _PARAMETERS = ("N", "K", "alpha", "exponent", "beta", "polynomial")
 
 
-def add_measure(parser: argparse.ArgumentParser, *, option: bool = False) -> None:
-    """The measure and its parameters: a positional MEASURE, or ``--measure`` where a file may name it already."""
+def add_measure(
+    parser: argparse.ArgumentParser, *, option: bool = False, use: str = "check against this measure"
+) -> None:
+    """The measure and its parameters: a positional MEASURE, or ``--measure`` where a file may name it already.
+
+    `use` says in the help what ``--measure`` does there.
+    """
     names = ", ".join(FAMILIES)
     if option:
-        parser.add_argument("--measure", metavar="MEASURE", help=f"check against this measure: {names}")
+        parser.add_argument("--measure", metavar="MEASURE", help=f"{use}: {names}")
     else:
         parser.add_argument("measure", metavar="MEASURE", help=f"one of {names}")
     parser.add_argument("-N", type=whole, metavar="N", help="number of outcomes or eigenvalues")

@@ -12,7 +12,7 @@ from mpmath import mpf
 from simplexcub.measures.base import FloatArray, Measure
 from simplexcub.measures.polynomial import PolynomialDensity
 from simplexcub.measures.sampling import beta_spectra, sample_size
-from simplexcub.measures.typeset import pair_product, power_product
+from simplexcub.measures.typeset import pair_product, power_product, raised
 from simplexcub.moments.digamma import DigammaSum
 from simplexcub.moments.expansion import expansion_moment, vandermonde_power
 from simplexcub.moments.jack import jack_moment, jack_power_sum
@@ -97,10 +97,10 @@ class BetaEnsemble(Measure):
         total = self.N * (self.c + 1) + self.N * (self.N - 1) * half
         power, tex_power = power_product(self.c, self.N)
         pairs, tex_pairs = pair_product(
-            f"|λ{{i}}−λ{{j}}|{_plain(self.beta)}", rf"|\lambda_i-\lambda_j|{_tex(self.beta)}", self.N
+            f"|λ{{i}}−λ{{j}}|{raised(self.beta)}", rf"|\lambda_i-\lambda_j|{_tex(self.beta)}", self.N
         )
         low, step = self.c + 1, 1 + half
-        plain = f"Γ({total}) Π_(j<{self.N}) Γ({step})/(Γ({low}+{half}j) Γ({step}+{half}j)) {power}{pairs}"
+        plain = f"Γ({total}) Π_(j<{self.N}) Γ({step})/(Γ({low}+{half}j) Γ({step}+{half}j)) · {power}{pairs}"
         tex = (
             rf"\Gamma({total})\prod_{{j=0}}^{{{self.N - 1}}}\frac{{\Gamma({step})}}"
             rf"{{\Gamma({low}+{half}j)\,\Gamma({step}+{half}j)}}\,{tex_power}{tex_pairs}"
@@ -109,10 +109,6 @@ class BetaEnsemble(Measure):
 
     def sample(self, rng: np.random.Generator, size: int) -> FloatArray:
         return beta_spectra(rng, self.N, float(self.beta), float(self.c), sample_size(size))
-
-
-def _plain(x: Fraction) -> str:
-    return "" if x == 1 else f"^{x}" if x.denominator == 1 else f"^({x})"
 
 
 def _tex(x: Fraction) -> str:

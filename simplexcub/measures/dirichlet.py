@@ -12,6 +12,7 @@ from mpmath import mpf
 
 from simplexcub.measures.base import FloatArray, Measure
 from simplexcub.measures.sampling import sample_size
+from simplexcub.measures.typeset import raised
 from simplexcub.moments.digamma import DigammaSum
 from simplexcub.moments.dirichlet import rising, rising_factorial_moment, stick_breaking_moment
 from simplexcub.moments.powersum import dirichlet_power_sum
@@ -73,7 +74,7 @@ class Dirichlet(Measure):
         if self.family == "flat":
             volume = str(math.factorial(self.N - 1)) if self.N <= LONGEST_FACTORIAL else f"{self.N - 1}!"
             return volume, volume
-        plain = " ".join(f"λ{i}^({a - 1})" for i, a in enumerate(self.alpha, 1) if a != 1)
+        plain = " ".join(f"λ{i}{raised(a - 1)}" for i, a in enumerate(self.alpha, 1) if a != 1)
         latex = r"\,".join(rf"\lambda_{{{i}}}^{{{a - 1}}}" for i, a in enumerate(self.alpha, 1) if a != 1)
         total = sum(self.alpha)
         gammas = " ".join(f"Γ({a})" for a in self.alpha)

@@ -13,7 +13,7 @@ from mpmath import mpf
 
 from simplexcub.measures.base import FloatArray, Measure
 from simplexcub.measures.sampling import bures_spectra, induced_spectra, sample_size
-from simplexcub.measures.typeset import WRITTEN_OUT, pair_product, power_product
+from simplexcub.measures.typeset import WRITTEN_OUT, pair_product, power_product, raised
 from simplexcub.moments.alternant import (
     Kernel,
     alternant_moment,
@@ -130,7 +130,7 @@ class Induced(Spectrum):
         power, tex_power = power_product(self.exponent, self.N)
         pairs, tex_pairs = pair_product("(λ{i}−λ{j})²", r"(\lambda_i-\lambda_j)^2", self.N)
         if self.N > WRITTEN_OUT:
-            plain = f"Γ({self.N * self.K})/Π_(j<{self.N}) Γ({self.K}−j) Γ({self.N + 1}−j)"
+            plain = f"Γ({self.N * self.K})/(Π_(j<{self.N}) Γ({self.K}−j) Γ({self.N + 1}−j)) ·"
             tex = (
                 rf"\frac{{\Gamma({self.N * self.K})}}"
                 rf"{{\prod_{{j=0}}^{{{self.N - 1}}}\Gamma({self.K}-j)\,\Gamma({self.N + 1}-j)}}"
@@ -208,7 +208,7 @@ class BuresHall(Spectrum):
         )
         low = self.c + 1
         if self.N > WRITTEN_OUT:
-            plain = f"Γ({total}) Π_(j<{self.N}) Γ({2 * low}+2j)/(Γ({low}+j) Γ({2 * low}+j) Γ(2+j))"
+            plain = f"Γ({total}) Π_(j<{self.N}) Γ({2 * low}+2j)/(Γ({low}+j) Γ({2 * low}+j) Γ(2+j)) ·"
             tex = (
                 rf"\Gamma({total})\prod_{{j=0}}^{{{self.N - 1}}}\frac{{\Gamma({2 * low}+2j)}}"
                 rf"{{\Gamma({low}+j)\,\Gamma({2 * low}+j)\,\Gamma(2+j)}}"
@@ -217,7 +217,7 @@ class BuresHall(Spectrum):
         mass = self._mass()
         rational, tex_rational = ("", "") if mass == 1 else (f"{1 / mass} ", rf"{1 / mass}\,")
         return (
-            f"{rational}Γ({total})/Γ({low})^{self.N} {power}{pairs}",
+            f"{rational}Γ({total})/Γ({low}){raised(Fraction(self.N))} · {power}{pairs}",
             rf"{tex_rational}\frac{{\Gamma({total})}}{{\Gamma({low})^{{{self.N}}}}}\,{tex_power}{tex_pairs}",
         )
 

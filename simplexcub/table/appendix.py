@@ -12,12 +12,14 @@ from simplexcub.rule import Rule
 from simplexcub.table import tex
 from simplexcub.table.as_latex import NARROW, PACKAGES, bibliography, expansion, fragment
 from simplexcub.table.describe import counted, efficiency, measure_name
+from simplexcub.table.kind import special_of
 from simplexcub.table.sheet import sheet
 from simplexcub.table.sources import numbered
 
 _MARGIN = 20  # millimetres
 _WIDE = 483.0  # points: what these margins leave of A4
 _HEAD_AND_FOOT = 140.0  # points that caption, headings and footnote take
+_WRAPPED = "p{44pt}"  # the last column of the overview
 _KEPT_WHOLE = 450.0  # a table no taller than this is kept on one page
 
 
@@ -84,7 +86,9 @@ def _introduction(rules: Sequence[Rule]) -> Iterator[str]:
 def _overview(rules: Sequence[Rule]) -> list[str]:
     """One line per rule: what there is, and how good it is."""
     several = len({rule.measure for rule in rules}) > 1
+    kinds = any(special_of(rule) for rule in rules)
     head = [*(["measure"] if several else []), "space", "degree", "symmetry", "nodes", "bound", "efficiency", "digits"]
+    head += ["special"] if kinds else []
     rows = []
     for rule in rules:
         check = rule.verification
@@ -92,10 +96,12 @@ def _overview(rules: Sequence[Rule]) -> list[str]:
         words = measure_name(rule.measure).replace(" eigenvalue measure", "").replace(" measure", "")
         measure = [tex.prose(words)] if several else []
         cells = [*measure, rule.space, str(rule.degree), tex.prose(rule.symmetry), str(len(rule)), *bound]
-        rows.append(" & ".join([*cells, str(rule.digits)]) + r" \\")
-    types = f"{'l' if several else ''}lrlrrrr"
+        cells += [str(rule.digits), *([tex.prose(special_of(rule))] if kinds else [])]
+        rows.append(" & ".join(cells) + r" \\")
+    size, gap = (r"\scriptsize", "2pt") if several and kinds else (r"\footnotesize", "4pt")
+    types = f"{'l' if several else ''}lrlrrrr{_WRAPPED if kinds else ''}"
     return [
-        r"\begingroup\footnotesize\setlength{\tabcolsep}{4pt}\setlength{\LTcapwidth}{\textwidth}",
+        rf"\begingroup{size}\setlength{{\tabcolsep}}{{{gap}}}\setlength{{\LTcapwidth}}{{\textwidth}}",
         rf"\begin{{longtable}}{{@{{}}{types}@{{}}}}",
         rf"\caption{{The {counted(len(rules), 'rule')} of this appendix. No rule of the degree has fewer nodes than "
         r"the bound; efficiency is bound over nodes.}\\",

@@ -14,6 +14,7 @@ from typing import NamedTuple
 from simplexcub.rule import Rule
 from simplexcub.table import tex
 from simplexcub.table.describe import Fact, counted, facts, heading, measure_name, noun
+from simplexcub.table.kind import special_of
 from simplexcub.table.sheet import TOGETHER, Entry, Sheet, sheet
 from simplexcub.table.sources import Source, numbered, sources
 
@@ -112,6 +113,7 @@ def _without_orbit_weights(page: Sheet) -> Sheet:
 
 def _caption(rule: Rule, page: Sheet, said: dict[str, Fact], *, example: bool) -> str:
     orbits = f" in {counted(len(rule.orbits), 'orbit')}" if page.by_orbits and rule.space == "all" else ""
+    kind = special_of(rule, functions=False)
     legend = page.legend
     if example and page.by_orbits and rule.space == "all":
         legend += f" {expansion(rule)}"
@@ -119,6 +121,7 @@ def _caption(rule: Rule, page: Sheet, said: dict[str, Fact], *, example: bool) -
         legend = legend.replace(f" {name} is ", f" ${symbol}$ is ").replace(f"; {name} is", f"; ${symbol}$ is")
     return (
         f"{tex.prose(measure_name(rule.measure))}: {counted(len(rule), noun(rule))}{orbits}, "
+        f"{kind}{', ' if kind else ''}"
         f"exact for {said['exact for'].tex}. Density {said['density'].tex}, of total mass~1; weights sum to~1. "
         f"Numbers are rounded to {rule.digits} significant digits. {_formulas(legend)}"
     )

@@ -9,6 +9,7 @@ from typing import NamedTuple
 from simplexcub.entropic import named
 from simplexcub.measures import Measure
 from simplexcub.rule import Rule, Verification
+from simplexcub.table.kind import special_of
 from simplexcub.table.sheet import SECOND
 from simplexcub.verify.embedded import embedded_faults
 from simplexcub.verify.entropic import also_faults
@@ -74,7 +75,8 @@ def heading(rule: Rule) -> str:
     """What the rule is, in a few words."""
     further = "".join(f" and {named(name).formula}" for name in rule.also)
     degree = f"{_KINDS[rule.space]}degree {rule.degree}{further}"
-    return f"{measure_name(rule.measure)}, {degree}, {counted(len(rule), noun(rule))}"
+    kind = special_of(rule, functions=False)
+    return ", ".join([measure_name(rule.measure), degree, counted(len(rule), noun(rule)), *([kind] if kind else [])])
 
 
 def noun(rule: Rule) -> str:

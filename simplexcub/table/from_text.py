@@ -150,6 +150,8 @@ def _integer(text: str, where: str) -> int:
 
 
 def _pattern(text: str, where: str) -> tuple[int, ...]:
+    if re.fullmatch(r"a … [b-v], all different|v1 … v[1-9][0-9]{0,3}, all different", text):
+        return multiplicities(text)
     if len(text) > 1000 or not re.fullmatch(r"[a-z][0-9]*(×[0-9]{1,4})?( [a-z][0-9]*(×[0-9]{1,4})?)*", text):
         raise TableError(f"{where} must have a pattern such as a b b", repr(text), _AGAIN)
     return multiplicities(text)

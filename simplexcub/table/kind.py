@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 import re
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 from pathlib import Path
 
 from simplexcub.measures import Measure
@@ -69,6 +69,24 @@ def kind_of(rule: Rule) -> Kind:
     """The kind of a rule."""
     fixed = (rule.equal_weights, bool(rule.integer_weights))
     return Kind(rule.space, rule.symmetry, *fixed, rule.also, rule.embedded is not None)
+
+
+def special(kind: Kind, embedded: int | None) -> str:
+    """What is special about a rule of the kind whose embedded weights, if any, are of degree `embedded`.
+
+    Examples
+    --------
+    >>> special(Kind("all", "full", equal_weights=True, embedded=True), 2)
+    'equal weights, embedded to degree 2'
+    """
+    return kind.told.removeprefix(", ") + ("" if embedded is None else f" to degree {embedded}")
+
+
+def special_of(rule: Rule, *, functions: bool = True) -> str:
+    """What is special about a rule; without `functions`, those that it averages besides polynomials are left out."""
+    kind = kind_of(rule)
+    shown = kind if functions else replace(kind, also=())
+    return special(shown, None if rule.embedded is None else rule.embedded.degree)
 
 
 def is_plain(stem: str) -> bool:

@@ -12,6 +12,7 @@ from simplexcub.table import tex
 from simplexcub.table.as_json import parse
 from simplexcub.table.describe import efficiency
 from simplexcub.table.files import read_text
+from simplexcub.table.kind import special
 from simplexcub.table.marks import published
 from simplexcub.table.shipped import Shipped, catalogue, folder
 
@@ -107,7 +108,7 @@ def _cells(line: Shipped) -> tuple[str, ...]:
         _NONE if mark is None else f"{mark.nodes} {mark.symmetry}",
         str(line.digits),
         "yes" if line.proven else "no",
-        line.kind.told.removeprefix(", ") + ("" if line.embedded is None else f" to degree {line.embedded}"),
+        special(line.kind, line.embedded),
         name_of(line),
     )
 

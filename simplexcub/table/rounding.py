@@ -12,9 +12,13 @@ from dataclasses import replace
 from decimal import ROUND_CEILING, ROUND_HALF_EVEN, Context, Decimal
 
 from simplexcub.decimals import significant_digits
+from simplexcub.embedded import Embedded
 from simplexcub.errors import InputError
 from simplexcub.rule import Orbit, Rule, Verification
 from simplexcub.verify import verify
+from simplexcub.verify.embedded import embedded_faults
+from simplexcub.verify.printed import read_printed
+from simplexcub.verify.structure import is_invariant
 
 
 def rounded(rule: Rule, digits: int) -> Rule:
@@ -23,7 +27,7 @@ def rounded(rule: Rule, digits: int) -> Rule:
     Raises
     ------
     InputError
-        Fewer than 1 digit, or more than the rule has.
+        Fewer than 1 digit, or more than the rule has; embedded weights that do not hold at their degree when rounded.
 
     Examples
     --------
@@ -44,10 +48,12 @@ def rounded(rule: Rule, digits: int) -> Rule:
         node_decimals=tuple(tuple(rounded_text(x, digits) for x in node) for node in rule.node_decimals),
         weight_decimals=tuple(rounded_text(w, digits) for w in rule.weight_decimals),
         orbits=tuple(_round_orbit(orbit, digits) for orbit in rule.orbits),
+        embedded=rule.embedded and _round_embedded(rule.embedded, digits),
         digits=digits,
         provenance=replace(rule.provenance, method=method),
         verification=None,
     )
+    _require_embedded(short)
     after = verify(short, max_degree=rule.degree).verification
     if after.fails_at_degree > rule.degree:
         after = replace(after, fails_at_degree=before.fails_at_degree)
@@ -71,6 +77,18 @@ def _round_orbit(orbit: Orbit, digits: int) -> Orbit:
     return replace(
         orbit, values=tuple(rounded_text(v, digits) for v in orbit.values), weight=rounded_text(orbit.weight, digits)
     )
+
+
+def _round_embedded(second: Embedded, digits: int) -> Embedded:
+    return replace(second, weight_decimals=tuple(rounded_text(w, digits) for w in second.weight_decimals))
+
+
+def _require_embedded(short: Rule) -> None:
+    printed = read_printed(short)
+    invariant = short.measure.is_symmetric and is_invariant(printed)
+    for fault in embedded_faults(short, short.measure, printed, invariant=invariant):
+        rule = f"embedded weights must hold when rounded to {short.digits} digits"
+        raise InputError(rule, fault, "Take more digits, or verify the table.")
 
 
 def _widened(found: Verification, rule: Rule, short: Rule) -> dict[str, object] | None:

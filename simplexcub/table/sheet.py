@@ -14,6 +14,7 @@ from simplexcub.table.orbits import count_nodes, node_weights
 SECOND = "w2"  # label of the embedded weights
 TOGETHER = ", W of all of them together"
 _LETTERS = "abcdefghijklmnopqrstuv"  # w and W are the weights
+_TO, _DIFFERENT = " … ", ", all different"
 _GROUP = 10
 _UNGROUPED = 20
 
@@ -101,10 +102,12 @@ def letters(count: int) -> tuple[str, ...]:
 
 
 def pattern(orbit: Orbit) -> str:
-    """The multiplicity pattern: ``a b b``, or ``a×1 b×15`` where that is shorter to read."""
+    """The multiplicity pattern: ``a b b``, or ``a×1 b×15`` and ``a … p, all different`` where it is shorter."""
     names = letters(len(orbit.values))
     if sum(orbit.multiplicities) <= 6:
         return " ".join(name for name, m in zip(names, orbit.multiplicities, strict=True) for _ in range(m))
+    if max(orbit.multiplicities) == 1:
+        return f"{names[0]}{_TO}{names[-1]}{_DIFFERENT}"
     return " ".join(f"{name}×{m}" for name, m in zip(names, orbit.multiplicities, strict=True))
 
 
@@ -113,9 +116,12 @@ def multiplicities(text: str) -> tuple[int, ...]:
 
     Examples
     --------
-    >>> multiplicities("a b b"), multiplicities("a×1 b×15")
-    ((1, 2), (1, 15))
+    >>> multiplicities("a b b"), multiplicities("a×1 b×15"), multiplicities("a … g, all different")
+    ((1, 2), (1, 15), (1, 1, 1, 1, 1, 1, 1))
     """
+    if text.endswith(_DIFFERENT):
+        last = text.removesuffix(_DIFFERENT).rpartition(_TO)[2]
+        return (1,) * (int(last[1:]) if last[1:] else _LETTERS.index(last) + 1)
     counts: dict[str, int] = {}
     for word in text.split(" "):
         name, _, times = word.partition("×")

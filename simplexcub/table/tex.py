@@ -79,7 +79,11 @@ def label(name: str) -> str:
 
 
 def pattern(text: str) -> str:
-    """A multiplicity pattern such as ``a b b`` or ``a×1 b×15``."""
+    """A multiplicity pattern such as ``a b b``, ``a×1 b×15`` or ``a … p, all different``."""
+    if "…" in text:
+        formula, _, words = text.partition(", ")
+        first, last = (re.sub("^([a-z])([0-9]+)$", r"\1_{\2}", name) for name in formula.split(" … "))
+        return rf"${first},\dots,{last}$, {words}"
     words = re.sub(r"×([0-9]+)", r"{\\times}\1", re.sub(r"([a-z])([0-9]+)(?=×| |$)", r"\1_{\2}", text))
     spaced = words.replace(" ", r"\,")
     return f"${spaced}$"
