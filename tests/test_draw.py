@@ -75,6 +75,16 @@ def test_draw_prints_the_errors_that_it_draws(call: Call, tmp_path: Path) -> Non
     assert path.read_bytes().endswith(b"</svg>\n")
 
 
+@pytest.mark.parametrize(("name", "shown"), [("von-neumann", "von Neumann entropy, Flat"), ("purity", "purity, Flat")])
+def test_the_title_of_errors_names_the_function_in_words(
+    call: Call, tmp_path: Path, monkeypatch: pytest.MonkeyPatch, name: str, shown: str
+) -> None:
+    titles: list[str] = []
+    monkeypatch.setattr("simplexcub.cli.draw.draw_convergence", lambda rules, title, *_, **__: titles.append(title))
+    assert call("draw", "--convergence", name, "--measure", "flat", "-N", 2, "-o", tmp_path / "e.svg")[0] == 0
+    assert titles[0].startswith(shown)
+
+
 # The command
 
 

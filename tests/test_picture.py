@@ -216,6 +216,13 @@ def test_stems_hang_as_low_as_their_weights() -> None:
 # N = 4 and beyond
 
 
+def test_the_note_of_the_tetrahedron_says_what_is_faint() -> None:
+    assert "fainter: farther away\nareas are proportional to weights" in {
+        text.get_text() for text in painted(tetrahedron, HS[4]).texts
+    }
+    assert not any("fainter" in text.get_text() for text in painted(triangle, HS[3]).texts)
+
+
 def test_the_tetrahedron_is_regular_and_has_one_hidden_edge() -> None:
     edges = [np.linalg.norm(a - b) for a, b in combinations(tetrahedron._SOLID, 2)]
     assert edges == pytest.approx([1.0] * 6)

@@ -17,6 +17,8 @@ from simplexcub.table.selection import located
 
 EXAMPLE = "simplexcub draw tables/hilbert-schmidt/N3/all-full-t07-15.json -o nodes.svg"
 
+_TITLES = {"von-neumann": "von Neumann entropy"}  # of functions that are not called in a title as on the command line
+
 
 def add_options(parser: argparse.ArgumentParser) -> None:
     """Declare the arguments of the command."""
@@ -53,7 +55,9 @@ def _convergence(args: argparse.Namespace) -> int:
     f = spectral_function(args.convergence)
     measure = measure_of(args)
     found = measure_errors(f, measure)
-    title = f"{f.name}, {measure_name(measure)}: error of the shipped rules against {found.against}"
+    title = (
+        f"{_TITLES.get(f.name, f.name)}, {measure_name(measure)}: error of the shipped rules against {found.against}"
+    )
     draw_convergence(found.rules, title, args.output, spread=found.spread)
     print(f"{found.against}: {found.reference:.15g}\n{'degree':>6}  {'nodes':>5}  {'error':>7}")
     for line in found.rules:

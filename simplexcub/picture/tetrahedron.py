@@ -42,7 +42,7 @@ def paint(figure: Figure, rule: Rule) -> None:
     chamber = on_chamber(rule)
     orbits = node_orbits(rule)
     places = chamber_coordinates(rule.nodes) if chamber else rule.nodes
-    style.heading(figure, title(rule), areas_note(rule))
+    style.heading(figure, title(rule), f"fainter: farther away\n{areas_note(rule)}")
     solid = figure.add_axes((0.02, 0.1, 0.5, 0.82))
     names = _CHAMBER if chamber else tuple(rf"$\lambda_{i}=1$" for i in (1, 2, 3, 4))
     flat, depth = projected(np.eye(4))
