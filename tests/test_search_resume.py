@@ -10,35 +10,12 @@ import numpy as np
 import psutil
 import pytest
 from conftest import package_environment
+from short_search import CASE, PLAN, search, short_plan, undisturbed  # noqa: F401 -- two of them are fixtures
 
 import simplexcub as sc
-from simplexcub.search import driver
 from simplexcub.search.record import Record
 from simplexcub.search.tasks import Chunk, Leg, run_task
 from simplexcub.symmetry import named_group
-
-# One short round of 2 walks and 12 chunks of starts, whatever the usual ones are.
-PLAN = {"WALKS": (2,), "ABREAST": 2, "CHUNKS": (12,), "STRUCTURES": (4,), "AGREE": (10**9,)}
-CASE = {"degree": 3, "symmetry": "cyclic", "digits": 20, "budget": 600.0}
-
-
-@pytest.fixture(autouse=True)
-def short_plan(monkeypatch):
-    for name, value in PLAN.items():
-        monkeypatch.setattr(driver, name, value)
-
-
-def search(**options):
-    return sc.solve(sc.hilbert_schmidt(3), **{**CASE, **options})
-
-
-@pytest.fixture(scope="module")
-def alone():
-    """The rule of a search in this process."""
-    with pytest.MonkeyPatch.context() as patch:
-        for name, value in PLAN.items():
-            patch.setattr(driver, name, value)
-        return search()
 
 
 def counted(monkeypatch):

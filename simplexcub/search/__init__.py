@@ -6,6 +6,7 @@ import datetime
 from collections.abc import Callable, Sequence
 from concurrent.futures import Executor
 from pathlib import Path
+from typing import get_args
 
 import numpy as np
 from mpmath import mp, mpf
@@ -34,7 +35,6 @@ from simplexcub.version import VERSION
 
 __all__ = ["Chebyshev", "KnownMean", "Progress", "chebyshev", "embed", "product_rule", "solve"]
 
-_SPACES = ("all", "symmetric", "ordered")
 _SPARE_DIGITS = 10  # of the chamber's coordinates, which are added up
 MOST_DIGITS, MOST_DEGREE = 1000, 500
 _PRODUCT_SHARE = 2  # products with up to so many nodes per equation are worth setting out from
@@ -296,5 +296,5 @@ def _check(*, degree: int, space: str, digits: int, seed: int, budget: float, jo
         raise InputError(f"degree must be at most {MOST_DEGREE}", degree)
     if not budget > 0:
         raise InputError("budget must be a positive number of seconds", budget)
-    if space not in _SPACES:
-        raise InputError(f"space must be one of {', '.join(_SPACES)}", space)
+    if space not in get_args(Space):
+        raise InputError(f"space must be one of {', '.join(get_args(Space))}", space)
